@@ -1,0 +1,80 @@
+import { existsSync } from "node:fs";
+import { join } from "node:path";
+import { root } from "../../daemon/ready/say.mjs";
+import { runAndCount } from "./counts.mjs";
+
+const bin = (name) => join("node_modules", ".bin", name);
+const run =
+  (what, command, ...args) =>
+  (limit_ms) =>
+    runAndCount(what, command, args, limit_ms);
+
+const biome = run("style", bin("biome"), "check", "--error-on-warnings", ".");
+const types = run("types", bin("tsc"), "--noEmit", "-p", "tsconfig.json");
+const unused = run("unused code", bin("knip"));
+const vitest = (what, project, ...filters) =>
+  run(what, bin("vitest"), "run", "--project", project, ...filters);
+
+/** A make target, where that Makefile exists. */
+const make = (what, folder, ...targets) =>
+  existsSync(join(root, folder, "Makefile")) ? [run(what, "make", "-C", folder, ...targets)] : [];
+
+const COMPILERS = ["gcc", "make"];
+const AVR = ["gcc-avr", "avr-libc", "binutils-avr", "libsimavr-dev", "libelf-dev"];
+
+/**
+ * Every suite: what it covers in words, the system packages it cannot do without, and its steps.
+ * A suite whose packages are missing is named as not tested.
+ */
+export const SUITES = [
+  {
+    name: "static",
+    covers: "style, types and unused code",
+    needs: [],
+    steps: () => [biome, types, unused],
+  },
+  {
+    name: "core",
+    covers: "the controller core and its firmware",
+    needs: [...COMPILERS, "gcc-avr", "avr-libc", "binutils-avr"],
+    steps: () => [
+      ...make("the core, natively", "firmware-protocol/c", "test"),
+      ...make("the firmware", "firmware-protocol/boards/atmega328p"),
+    ],
+  },
+  {
+    name: "unit",
+    covers: "every room by itself, published values, architecture",
+    needs: [...COMPILERS, "gcc-avr", "binutils-avr"],
+    steps: () => [vitest("unit tests", "unit")],
+  },
+  {
+    name: "process",
+    covers: "the daemon and its commands as processes",
+    needs: [],
+    steps: () => [vitest("process tests", "process", "test/process")],
+  },
+  {
+    name: "hardware",
+    covers: "the firmware on a simulated processor",
+    needs: [...COMPILERS, ...AVR],
+    steps: () => [vitest("hardware tests", "process", "test/hardware")],
+  },
+  {
+    name: "browser",
+    covers: "the pages in a browser",
+    needs: ["chromium"],
+    steps: () => [vitest("browser tests", "browser")],
+  },
+];
+
+/** What `npm run check` runs: no compiler, no browser, no process. */
+export const QUICK = [
+  { name: "static", covers: "style and types", needs: [], steps: () => [biome, types] },
+  {
+    name: "unit",
+    covers: "unit and architecture tests",
+    needs: [],
+    steps: () => [vitest("unit tests", "unit", "test/unit", "test/architecture")],
+  },
+];
