@@ -11,6 +11,8 @@ export interface Bench {
   readonly controller: ControllerPart;
   readonly diode: DiodePart;
   readonly crystal: CrystalPart | null;
+  /** How heat leaves the case; null where nobody has measured or guessed it. */
+  readonly cooling: CoolingPart | null;
   readonly limits: LimitsPart;
   /** Case temperature ascending, current not rising; between points linear, beyond the ends flat
    * below the first and zero above the last. */
@@ -65,6 +67,14 @@ export interface CrystalPart {
   readonly pumpDrift_nmPerK: number;
 }
 
+/** Two nodes: the case (with what is bolted to it), and the sink, which gives its heat to the room. */
+export interface CoolingPart {
+  readonly caseToSink_KperW: number;
+  readonly sinkToRoom_KperW: number;
+  readonly case_JperK: number;
+  readonly sink_JperK: number;
+}
+
 export interface LimitsPart {
   readonly current_mA: number;
   readonly slewUp_mAperS: number;
@@ -106,8 +116,9 @@ export const HAZARD_IDS = [
 export type HazardId = (typeof HAZARD_IDS)[number];
 
 /**
- * Levels of one row, in the row's own unit; null means that the row has no such action.
- * Delays are milliseconds of standing beyond the level; deadband is in the row's unit.
+ * Levels of one row, in the row's own unit (hazard-rows.ts says which); null means that the row has
+ * no such action. Delays are milliseconds of standing beyond the level; deadband is in the row's
+ * unit, or in kelvin for a temperature. A row that is a plain fact (key off) has level 1.
  */
 export interface HazardLevels {
   readonly warn: number | null;
@@ -115,6 +126,8 @@ export interface HazardLevels {
   readonly trip: number | null;
   readonly tripDelay_ms: number;
   readonly deadband: number;
+  /** Process safety time: longest from the hazard to dark, milliseconds. */
+  readonly safety_ms: number;
 }
 
 /** What the bench has in hardware, as its owner states it. */

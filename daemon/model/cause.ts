@@ -66,7 +66,12 @@ export const CAUSES: readonly Cause[] = [
   cause(83, "link-lost", "the port was lost while armed", "host"),
   cause(84, "host-restarted", "the daemon had stopped while the bench was armed", "host"),
   cause(85, "daemon-stopped", "the daemon was stopped while the bench was armed", "host"),
-  cause(86, "dark-time", "it stood armed at zero current longer than the bench file allows", "host"),
+  cause(
+    86,
+    "dark-time",
+    "it stood armed at zero current longer than the bench file allows",
+    "host",
+  ),
   cause(87, "host-defect", "the daemon found itself in an impossible state", "host"),
   cause(255, "unknown", "no cause was kept", "board"),
 ];
