@@ -2,8 +2,8 @@ import { defineConfig } from "vitest/config";
 import { ClosingLine } from "./test/reporter.ts";
 
 /** Nothing here waits longer than this without a time-out of its own. */
-const UNIT_MS = 20_000;
-const PROCESS_MS = 120_000;
+const unit_ms = 20_000;
+const process_ms = 120_000;
 
 export default defineConfig({
   test: {
@@ -13,9 +13,9 @@ export default defineConfig({
       {
         test: {
           name: "unit",
-          include: ["test/{unit,published,architecture}/**/*.test.{ts,tsx}"],
+          include: ["test/{unit,published,architecture}/**/*.test.{ts,tsx,mjs}"],
           pool: "threads",
-          testTimeout: UNIT_MS,
+          testTimeout: unit_ms,
         },
       },
       {
@@ -24,8 +24,8 @@ export default defineConfig({
           include: ["test/{process,hardware}/**/*.test.ts"],
           pool: "forks",
           fileParallelism: false,
-          testTimeout: PROCESS_MS,
-          hookTimeout: PROCESS_MS,
+          testTimeout: process_ms,
+          hookTimeout: process_ms,
           globalSetup: ["test/built.ts"],
         },
       },
@@ -35,8 +35,8 @@ export default defineConfig({
           include: ["test/browser/**/*.test.ts"],
           pool: "forks",
           fileParallelism: false,
-          testTimeout: PROCESS_MS,
-          hookTimeout: PROCESS_MS,
+          testTimeout: process_ms,
+          hookTimeout: process_ms,
           globalSetup: ["test/built.ts"],
         },
       },

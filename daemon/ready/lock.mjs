@@ -4,7 +4,7 @@ import { setTimeout as pause } from "node:timers/promises";
 import { root, say } from "./say.mjs";
 
 const LOCK = join(root, ".beamsitter", "ready.lock");
-const POLL_MS = 250;
+const poll_ms = 250;
 
 /**
  * Runs `work` while no other process installs or builds in this checkout; waits for one that does.
@@ -21,7 +21,7 @@ export async function withLock(work, lock = LOCK) {
       say(`process ${owner} is installing or building here; waiting for it (${lock})`);
       told = true;
     }
-    await pause(POLL_MS);
+    await pause(poll_ms);
   }
   try {
     return await work();

@@ -16,7 +16,7 @@ export class NotReady extends Error {
 }
 
 /** How often a long step tells that it is still at work. */
-const STILL_MS = 10_000;
+const still_ms = 10_000;
 
 /**
  * Runs a program in the checkout and waits for it. Its stdout goes to stderr.
@@ -26,7 +26,7 @@ export function runTool(what, command, args, env = process.env) {
   const begun = Date.now();
   const still = setInterval(() => {
     say(`still ${what}, ${Math.round((Date.now() - begun) / 1000)} s so far`);
-  }, STILL_MS);
+  }, still_ms);
   return new Promise((resolve, reject) => {
     const child = spawn(command, args, { cwd: root, env, stdio: ["ignore", 2, 2] });
     child.once("error", (error) => {
