@@ -53,8 +53,21 @@ export const ROOMS_TABLE: readonly Room[] = [
     packages: ["node:*", "fastify", "@fastify/static", "@fastify/websocket", "cookie", "zod"],
   },
   {
+    path: "daemon/loop",
+    rooms: [MODEL, "daemon/judge", "daemon/link", "daemon/control/api"],
+    packages: [],
+    pure: true,
+  },
+  {
     path: "daemon/supervise.ts",
-    rooms: [MODEL, "daemon/judge", "daemon/link", "daemon/link/transports", "daemon/control"],
+    rooms: [
+      MODEL,
+      "daemon/judge",
+      "daemon/link",
+      "daemon/link/transports",
+      "daemon/control",
+      "daemon/loop",
+    ],
     packages: ["node:worker_threads", "node:child_process"],
   },
   {
