@@ -63,6 +63,10 @@ export interface Input {
   /** Controller's clock against the host's: relative drift (0.01 is 1 %) and jump since last, ms. */
   drift: number;
   jump_ms: number;
+  /** 1 where no newer sample was read with this one, and where all lines written before have left.
+   * A permit is made only where both hold; they are recorded, so that a replay decides the same. */
+  newest: number;
+  portDrained: number;
   request: number;
   asker: number;
   /** Returned with the answer, so that the switch finds who asked. */

@@ -31,6 +31,8 @@ export const ROW = {
   /** Bit sets of channels refreshed by this sample, 32 channels each. */
   freshLow: 21,
   freshHigh: 22,
+  /** 1 where the sample was the newest read, plus 2 where the port had drained: inputs of the judge. */
+  gate: 23,
   values: 24,
 } as const;
 export const ROW_LENGTH = ROW.values + CHANNELS_MAX;
