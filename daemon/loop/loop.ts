@@ -1,3 +1,16 @@
+import { compilePlan, type Plan } from "../judge/plan.ts";
+import {
+  ASKERS,
+  type Asker,
+  INPUT,
+  type Input,
+  ORDER,
+  type Out,
+  REQUESTS,
+  type RequestName,
+} from "../judge/records.ts";
+import { newInput, newOut, newState, restoreLatch, type State } from "../judge/state.ts";
+import { step } from "../judge/step.ts";
 import { type CurvePoints, LinkSession } from "../link/session.ts";
 import type { Bench } from "../model/bench.ts";
 import { LINK_FACTS, type LinkFact } from "../model/link-fact.ts";
@@ -5,14 +18,9 @@ import type { Manifest } from "../model/manifest.ts";
 import type { StoredLatch } from "../model/record-messages.ts";
 import type { Ring } from "../model/ring.ts";
 import type { Mono_ms } from "../model/times.ts";
-import { compilePlan, type Plan } from "../judge/plan.ts";
-import { type Asker, INPUT, type Input, ORDER, type Out, type RequestName } from "../judge/records.ts";
-import { ASKERS, REQUESTS } from "../judge/records.ts";
-import { newInput, newOut, newState, restoreLatch, type State } from "../judge/state.ts";
-import { step } from "../judge/step.ts";
 import type { LoopPorts } from "./ports.ts";
-import { Telling } from "./telling.ts";
 import { writeRow } from "./row.ts";
+import { Telling } from "./telling.ts";
 
 /** One received line and the moment it was read. */
 export interface Received {

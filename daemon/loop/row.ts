@@ -1,6 +1,6 @@
 import type { Input, View } from "../judge/records.ts";
+import { type Ring, ROW } from "../model/ring.ts";
 import { CHANNELS_MAX } from "../model/sample.ts";
-import { ROW, type Ring } from "../model/ring.ts";
 
 /**
  * Writes one judged sample into the ring the recorder reads: the sample as it came, when it came,

@@ -1,0 +1,134 @@
+import type { EventLine } from "../control/api.ts";
+import { type Input, NO_HAZARD, type Out, STATE, STATES } from "../judge/records.ts";
+import { eventWords } from "../judge/words.ts";
+import { HAZARD_IDS } from "../model/bench.ts";
+import { causeOf } from "../model/cause.ts";
+import { type BenchEvent, EVENT_KINDS, type EventKind } from "../model/event.ts";
+import type { LinkFact } from "../model/link-fact.ts";
+import type { Manifest } from "../model/manifest.ts";
+import type { SessionKind } from "../model/record-messages.ts";
+import type { Wall_ms } from "../model/times.ts";
+import type { LoopPorts } from "./ports.ts";
+
+/** Link facts that are a person's business: each becomes an event of kind "link". */
+const TOLD: ReadonlySet<LinkFact> = new Set<LinkFact>([
+  "wrong-version",
+  "board-reset",
+  "board-changed",
+  "curve-loaded",
+  "curve-failed",
+  "reset-refused",
+  "arm-refused",
+  "no-answer",
+  "silence",
+]);
+
+/**
+ * Turns what the judge orders into what the recorder keeps and people read: events with their
+ * words, the journal of inputs, and the beginnings and ends of sessions.
+ */
+export class Telling {
+  readonly #bench: string;
+  readonly #ports: LoopPorts;
+  #nextId = 1;
+  #session: SessionKind | "end" = "end";
+  /** When the state last changed, wall ms. */
+  since: Wall_ms;
+  #state: number = STATE.offline;
+
+  constructor(bench: string, ports: LoopPorts) {
+    this.#bench = bench;
+    this.#ports = ports;
+    this.since = ports.wall();
+  }
+
+  /** Ids go on where the record left off. */
+  startAfter(lastEventId: number): void {
+    this.#nextId = lastEventId + 1;
+  }
+
+  /** An input other than a sample, kept in order. Samples travel in the ring. */
+  journal(input: Input): void {
+    this.#ports.record({
+      kind: "journal",
+      entry: {
+        input: input.n,
+        kind: input.kind,
+        now_ms: input.now_ms,
+        request: input.request,
+        asker: input.asker,
+        requestId: input.requestId,
+        value: input.value,
+        fact: input.fact,
+        factValue: input.factValue,
+      },
+    });
+  }
+
+  /** A link fact that people want to hear of. */
+  link(fact: LinkFact, value: number, text: string, input: Input): void {
+    if (TOLD.has(fact))
+      this.say("link", fact, text, fact === "curve-loaded" ? "calm" : "warn", input, value, 0);
+  }
+
+  /** What a step said: its events, and the session it opens or ends. */
+  outcome(out: Out, input: Input, rows: number, manifest: Manifest | null): void {
+    for (let i = 0; i < out.eventCount; i++) this.#event(out, i, input);
+    if (out.view.state !== this.#state) {
+      this.#state = out.view.state;
+      this.since = this.#ports.wall();
+    }
+    const session = sessionOf(out.view.state, manifest !== null);
+    if (session === this.#session) return;
+    this.#session = session;
+    this.#ports.record({ kind: "session", ringRow: rows, session, at: this.#ports.wall() });
+  }
+
+  #event(out: Out, i: number, input: Input): void {
+    const kind = EVENT_KINDS[out.eventKind[i] as number] ?? "link";
+    const hazard = out.eventHazard[i] as number;
+    const a = out.eventA[i] as number;
+    const b = out.eventB[i] as number;
+    const told = eventWords(kind, hazard, a, b);
+    this.say(kind, hazardId(hazard), told.words, told.weight, input, a, b);
+  }
+
+  /** Numbers, words and weight of one event, to the recorder first and then to watchers. */
+  say(
+    kind: EventKind,
+    hazard: string,
+    words: string,
+    weight: EventLine["weight"],
+    input: Input | null,
+    a: number,
+    b: number,
+  ): void {
+    const wall = this.#ports.wall();
+    const event: BenchEvent = {
+      id: this.#nextId++,
+      bench: this.#bench,
+      input: input?.n ?? 0,
+      tick: input !== null && input.kind === 0 ? input.sample.tick : -1,
+      mono: this.#ports.now(),
+      wall,
+      kind,
+      hazard,
+      data: { a, b, words, weight },
+    };
+    this.#ports.record({ kind: "event", event });
+    this.#ports.event({ id: event.id, at: wall, kind, hazard, weight, words }, event);
+  }
+}
+
+/** Which kind of session a state belongs to; armed to dark is one, dark while connected another. */
+function sessionOf(state: number, connected: boolean): SessionKind | "end" {
+  const name = STATES[state];
+  if (name === "armed" || name === "emitting") return "lit";
+  return connected && name !== "offline" ? "dark" : "end";
+}
+
+/** Identifier of what an event is about: a cause, a row that only warns, or nothing. */
+export function hazardId(code: number): string {
+  if (code >= 0) return causeOf(code).id;
+  return code === NO_HAZARD ? "" : (HAZARD_IDS[-1 - code] ?? "");
+}
