@@ -1,0 +1,103 @@
+import { z } from "zod";
+import { line, oneOf, plainNumber, quantity, section, wholeNumber, yesNo } from "./fields.ts";
+import { conversionSchema } from "./schema-channels.ts";
+import { hazardsSchema } from "./schema-hazards.ts";
+
+/**
+ * The shape of a bench file: its keys, their kinds and the widest values that make sense. What
+ * depends on more than one value is in lints. Bounds are wide on purpose: they catch a wrong unit or
+ * a slipped point, not a rare bench.
+ */
+const current = (max_mA = 100_000) => quantity("current", { min: 1, max: max_mA });
+const caseTemperature = () => quantity("temperature", { min: -60, max: 200 });
+
+const connectSchema = section("a map that says how the board is reached", {
+  kind: oneOf("how the board is reached", ["serial", "tcp", "built-in"]),
+  path: line("the port's path, such as /dev/ttyACM0", /^\S{1,200}$/, ""),
+  baud: quantity("baud", { min: 9600, max: 4_000_000 }, 115_200),
+  host: line("a host name or address", /^[A-Za-z0-9.:-]{1,200}$/, ""),
+  port: wholeNumber("the TCP port", { min: 1, max: 65_535 }, 0),
+  seed: wholeNumber("the seed of the built-in bench", { min: 0, max: 4_294_967_295 }, 1),
+});
+
+const controllerSchema = section("a map that describes the board", {
+  connect: connectSchema,
+  board: line("the board's serial number, or any", /^(any|[A-Z0-9-]{1,12})$/, "any"),
+  rate: quantity("rate", { min: 1, max: 2000 }, 50),
+  term: quantity("time", { min: 150, max: 10_000 }, 500),
+});
+
+const diodeSchema = section("a map that describes the diode", {
+  wavelength: quantity("length", { min: 200, max: 12_000 }),
+  threshold: current(),
+  slope: quantity("slope", { min: 0.01, max: 10 }),
+  at: quantity("temperature", { min: -60, max: 200 }, 25),
+  "threshold-t0": quantity("difference", { min: 10, max: 1000 }),
+  "slope-t1": quantity("difference", { min: 10, max: 5000 }),
+  voltage: quantity("voltage", { min: 100, max: 20_000 }).optional(),
+  resistance: quantity("resistance", { min: 0, max: 100 }).optional(),
+  absolute: current(),
+  "junction-to-case": quantity("thermal", { min: 0.01, max: 1000 }).optional(),
+  "junction-max": quantity("temperature", { min: 0, max: 250 }).optional(),
+});
+
+const crystalSchema = section("a map that describes the crystal", {
+  wavelength: quantity("length", { min: 200, max: 12_000 }),
+  threshold: quantity("power", { min: 0.1, max: 1_000_000 }),
+  slope: quantity("ratio", { min: 0.001, max: 1 }),
+  line: quantity("length", { min: 200, max: 12_000 }),
+  "line-width": quantity("length", { min: 0.01, max: 200 }),
+  depth: plainNumber("peak absorption times length", { min: 0.01, max: 100 }),
+  "pump-drift": quantity("drift", { min: 0, max: 5 }, 0.3),
+});
+
+const coolingSchema = section("a map that describes the cooling", {
+  "case-to-sink": quantity("thermal", { min: 0.01, max: 1000 }),
+  "sink-to-room": quantity("thermal", { min: 0.01, max: 1000 }),
+  "case-heat": quantity("heat", { min: 0.001, max: 100_000 }),
+  "sink-heat": quantity("heat", { min: 0.001, max: 1_000_000 }),
+});
+
+const limitsSchema = section("a map of limits", {
+  current: current(),
+  "slew-up": quantity("slew", { min: 1, max: 100_000 }, 200),
+  "dark-time": quantity("time", { min: 1000, max: 3_600_000 }, 600_000),
+  recover: quantity("difference", { min: 0.1, max: 50 }, 1),
+  "recover-after": quantity("time", { min: 1000, max: 3_600_000 }, 60_000),
+});
+
+const deratingSchema = z
+  .array(
+    section("a point: a map of case and current", {
+      case: caseTemperature(),
+      current: quantity("current", { min: 0, max: 100_000 }),
+    }),
+    { error: () => "a list of points, each with case and current" },
+  )
+  .min(2)
+  .max(16);
+
+const protectionsSchema = section("a map of yes and no", {
+  key: yesNo("a key switch breaks the supply of the output stage", false),
+  "interlock-loop": yesNo("an interlock loop breaks the supply of the output stage", false),
+  "emission-warning": yesNo("a lamp or buzzer warns of emission", false),
+  "beam-stop": yesNo("a shutter or stop closes the beam", false),
+  "manual-reset": yesNo("after an interlock somebody must reset by hand", false),
+  "toggled-enable": yesNo("the output stage needs a toggled enable line", false),
+});
+
+export const fileSchema = section("a map of keys, beginning with bench", {
+  bench: line("a short name: a-z, 0-9 and -, beginning with a letter", /^[a-z][a-z0-9-]{0,30}$/),
+  title: line("one line of text, at most 120 characters", /^[^\r\n]{1,120}$/, ""),
+  light: oneOf("how the light is made", ["continuous"], "continuous"),
+  controller: controllerSchema,
+  diode: diodeSchema,
+  crystal: crystalSchema.optional(),
+  cooling: coolingSchema.optional(),
+  limits: limitsSchema,
+  derating: deratingSchema,
+  channels: z.record(z.string(), conversionSchema, { error: () => "a map of channels" }).optional(),
+  hazards: hazardsSchema.optional(),
+  protections: protectionsSchema.optional(),
+});
+export type BenchFile = z.output<typeof fileSchema>;
