@@ -1,0 +1,89 @@
+import { Command } from "commander";
+import { SwitchClient } from "../control/client.ts";
+import { EXIT, print, printJson, reasonOf } from "./say.ts";
+import { isAlive, type Notice, notices } from "./where.ts";
+
+/** How long the switch and the dark port may take before the daemon itself is ended, ms. */
+const WAY_MS_MAX = 700;
+
+type Told = {
+  bench: string;
+  ok: boolean;
+  way: "switch" | "dark port" | "daemon ended";
+  words: string;
+};
+
+/**
+ * `dark`: three ways, each simpler than the one before. Without `--on` every running bench goes dark:
+ * at that moment nobody wants to be asked which.
+ */
+export const darkCommand = (): Command =>
+  new Command("dark")
+    .description("cut the light now; without --on, of every running bench")
+    .option("--on <name>", "only this bench")
+    .option("--json", "what was done, as one JSON object")
+    .addHelpText("after", "\nExample:\n  beamsitter dark")
+    .action(async (options: { on?: string; json?: boolean }) => {
+      const meant = notices().filter((n) => options.on === undefined || n.bench === options.on);
+      const told = await Promise.all(meant.filter((n) => isAlive(n.pid)).map(darken));
+      if (options.json === true) printJson({ benches: told });
+      else if (told.length === 0) {
+        print(
+          "No daemon runs here, so none sends permits; a board without them is dark by itself.",
+        );
+        print("Whether some other computer drives the bench is not known here: go and look.");
+      } else for (const t of told) print(`${t.bench}: ${t.words}`);
+      process.exitCode =
+        told.length === 0 ? EXIT.absent : told.every((t) => t.ok) ? EXIT.done : EXIT.refused;
+    });
+
+async function darken(notice: Notice): Promise<Told> {
+  const bench = notice.bench;
+  const bySwitch = await within(askSwitch(notice));
+  if (bySwitch !== null) return { bench, ok: true, way: "switch", words: bySwitch };
+  const byPort = await within(askPort(notice));
+  if (byPort !== null) return { bench, ok: true, way: "dark port", words: byPort };
+  return endDaemon(notice);
+}
+
+async function askSwitch(notice: Notice): Promise<string> {
+  const client = await SwitchClient.connect(notice.socket);
+  const answer = await client.ask({ verb: "dark", asker: "person" });
+  client.close();
+  return answer.words;
+}
+
+async function askPort(notice: Notice): Promise<string> {
+  const response = await fetch(`http://127.0.0.1:${notice.darkPort}/dark`, { method: "POST" });
+  const body = (await response.json()) as { words?: unknown };
+  return typeof body.words === "string" ? body.words : "Dark was heard.";
+}
+
+/** The words of a way that answered in time, or null: then the next way is taken. */
+async function within(way: Promise<string>): Promise<string | null> {
+  let timer: NodeJS.Timeout | undefined;
+  const late = new Promise<null>((resolve) => {
+    timer = setTimeout(() => resolve(null), WAY_MS_MAX);
+  });
+  const result = await Promise.race([way.catch(() => null), late]);
+  clearTimeout(timer);
+  return result;
+}
+
+function endDaemon(notice: Notice): Told {
+  const base = { bench: notice.bench, way: "daemon ended" as const };
+  try {
+    process.kill(notice.pid, "SIGKILL");
+    return {
+      ...base,
+      ok: true,
+      words: `the daemon answered on neither way, so it was ended (process ${notice.pid}). Without permits the board is dark within the term and the fall of its stage. Go and look.`,
+    };
+  } catch (error) {
+    return {
+      ...base,
+      ok: false,
+      words: `the daemon answers on neither way and could not be ended: ${reasonOf(error)}. Turn the key or open the interlock.`,
+    };
+  }
+}

@@ -1,0 +1,48 @@
+/** Exit codes of every command, as `--help` tells them. */
+export const EXIT = {
+  done: 0,
+  /** The judge refused, or `check` found an error: nothing was changed. */
+  refused: 1,
+  /** The command line itself was off. */
+  usage: 2,
+  /** No daemon answers for this bench. */
+  absent: 3,
+  /** Something outside stood in the way: a port, a folder, a file. */
+  outside: 4,
+} as const;
+
+/** A trouble with its remedy: printed as two lines, never as a stack. */
+export class Trouble extends Error {
+  readonly remedy: string;
+  readonly exit: number;
+  constructor(found: string, remedy: string, exit: number = EXIT.outside) {
+    super(found);
+    this.remedy = remedy;
+    this.exit = exit;
+  }
+}
+
+/** One line to a person. */
+export const print = (line: string): void => {
+  process.stdout.write(`${line}\n`);
+};
+
+/** One JSON document on stdout. */
+export const printJson = (value: unknown): void => {
+  process.stdout.write(`${JSON.stringify(value, null, 2)}\n`);
+};
+
+/** A line about work going on; to stderr, and only where a person watches. */
+export const progress = (line: string): void => {
+  if (process.stderr.isTTY) process.stderr.write(`\r\u001b[2K${line}`);
+};
+
+/** The reason inside an unknown error, in its own words. */
+export const reasonOf = (error: unknown): string =>
+  error instanceof Error ? error.message : String(error);
+
+/** The system's code of an error (`EACCES`), or an empty text. */
+export const codeOf = (error: unknown): string => {
+  const code = (error as { code?: unknown } | null)?.code;
+  return typeof code === "string" ? code : "";
+};
