@@ -46,7 +46,10 @@ function stampOf(files) {
   return hash.digest("hex");
 }
 
-/** The parts of a build; each has a stamp of its own in dist/, so that only what changed is made. */
+/**
+ * The parts of a build. `make` resolves to null, or to what went wrong, in words. Each has a stamp of its own in dist/, so that only
+ * what changed is made.
+ */
 const PARTS = [
   { stamp: ".code-stamp", sees: (path) => isCode(path) || isAsset(path), make: makeCode },
   { stamp: ".pages-stamp", sees: isPage, make: makePages },
@@ -72,11 +75,9 @@ async function makeCode(files) {
   const tsc = join(root, "node_modules", "typescript", "bin", "tsc");
   const code = await runTool("compiling", process.execPath, [tsc, "-p", "tsconfig.json"]);
   removeLeftovers(outputs);
-  if (code === 0) return;
-  throw new NotReady(
-    "the TypeScript sources do not compile; the compiler's messages stand above.",
-    "If you changed nothing, this checkout is broken: take another commit.",
-  );
+  return code === 0
+    ? null
+    : "The TypeScript sources do not compile; the compiler's messages stand above.";
 }
 
 function copyAsset(path) {
@@ -96,7 +97,7 @@ function removeLeftovers(outputs) {
 }
 
 async function makePages() {
-  if (!existsSync(join(root, "dashboards", "index.html"))) return;
+  if (!existsSync(join(root, "dashboards", "index.html"))) return null;
   const vite = join(root, "node_modules", "vite", "bin", "vite.js");
   const args = [vite, "build", "dashboards", "--outDir", PAGES, "--emptyOutDir"];
   const code = await runTool("building the pages", process.execPath, [
@@ -104,11 +105,7 @@ async function makePages() {
     "--logLevel",
     "warn",
   ]);
-  if (code === 0) return;
-  throw new NotReady(
-    "the pages do not build; the message of vite stands above.",
-    "If you changed nothing, this checkout is broken: take another commit.",
-  );
+  return code === 0 ? null : "The pages do not build; the message of vite stands above.";
 }
 
 /** The step that fills dist/. */
@@ -122,12 +119,21 @@ export const build = {
     say("building dist/");
     mkdirSync(DIST, { recursive: true });
     const files = allFiles();
+    const failures = [];
     for (const part of PARTS) {
       if (isFresh(part, files)) continue;
       // Stamped with what was read before compiling: a file saved meanwhile is built next time.
       const stamp = stampOf(files.filter(part.sees));
-      await part.make(files.filter(part.sees));
-      writeFileSync(join(DIST, part.stamp), stamp);
+      const failure = await part.make(files.filter(part.sees));
+      if (failure === null) writeFileSync(join(DIST, part.stamp), stamp);
+      else failures.push(failure);
+    }
+    // One failure does not hide another: the pages are tried even where the code is broken.
+    if (failures.length > 0) {
+      throw new NotReady(
+        failures.join(" "),
+        "If you changed nothing, this checkout is broken: take another commit.",
+      );
     }
   },
 };

@@ -1,7 +1,7 @@
 import { describe, expect, test } from "vitest";
 import { importsOf } from "./imports.ts";
 import { violation } from "./rooms.ts";
-import { type Source, typescriptOf } from "./sources.ts";
+import { pathsOf, readSource, type Source, typescriptOf } from "./sources.ts";
 
 const violations = (sources: readonly Source[]): string[] =>
   sources.flatMap((source) => importsOf(source).map(violation)).filter((found) => found !== null);
@@ -9,6 +9,12 @@ const violations = (sources: readonly Source[]): string[] =>
 describe("imports between rooms", () => {
   test("follow the table", () => {
     expect(violations(typescriptOf("daemon", "firmware-protocol", "dashboards"))).toEqual([]);
+  });
+
+  test("what runs before anything is installed needs Node alone", () => {
+    const early = pathsOf(["daemon", "test"], [".mjs"]).filter((path) => !/\.test\./.test(path));
+    const needed = early.flatMap((path) => importsOf(readSource(path)).map(({ to }) => to));
+    expect(needed.filter((to) => !to.startsWith("node:") && !to.endsWith(".mjs"))).toEqual([]);
   });
 
   // Sources that exist only here, so that a checker which sees nothing is caught.

@@ -8,7 +8,7 @@ export const WORKER_LINES_MAX = 15;
 /** Most lines that a file may have, by what it is. */
 export function linesMax(path: string): number {
   if (/^daemon\/[^/]+\/worker\.ts$/.test(path)) return WORKER_LINES_MAX;
-  if (path.startsWith("daemon/cli/commands/")) return COMMAND_LINES_MAX;
+  if (path.startsWith("daemon/cli/")) return COMMAND_LINES_MAX;
   return FILE_LINES_MAX;
 }
 
