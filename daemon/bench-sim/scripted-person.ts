@@ -1,0 +1,27 @@
+import type { Snapshot } from "../control/api.ts";
+import type { Question } from "../control/client.ts";
+
+/** Current that the scripted person of bench "north" means, mA. */
+export const SCRIPTED_mA = 1800;
+
+/**
+ * The person of the built-in bench: arms it when it stands by, and lowers the current where it is
+ * refused as too high. Speaks to the switch like anybody; the switch refuses this person on any
+ * other bench. Never resets a trip: that is left for whoever watches.
+ */
+export class ScriptedPerson {
+  #asked = false;
+
+  /** What to ask next, seeing that; null for nothing. */
+  look(snapshot: Snapshot): Question | null {
+    if (this.#asked || snapshot.state !== "standby" || snapshot.ceiling_mA === null) return null;
+    this.#asked = true;
+    const current_mA = Math.min(SCRIPTED_mA, Math.floor(snapshot.ceiling_mA / 10) * 10);
+    return { verb: "arm", current_mA, asker: "scripted-person" };
+  }
+
+  /** The answer to what was asked: a refusal is tried again at the next look. */
+  told(ok: boolean): void {
+    if (!ok) this.#asked = false;
+  }
+}
