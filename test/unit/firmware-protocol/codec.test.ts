@@ -213,6 +213,38 @@ describe("checked by hand", () => {
     expect(decodeSampleInto(seal("<say sample"), groups, sample)).toBe("verb");
   });
 
+  test.each([
+    "4294967296 2 0000 0 - - 1 0 1 2 3 4",
+    "1 4294967296 0000 0 - - 1 0 1 2 3 4",
+    "1 2 0000 256 - - 1 0 1 2 3 4",
+    "1 2 0000 0 4294967296 - 1 0 1 2 3 4",
+    "1 2 0000 0 - 65536 1 0 1 2 3 4",
+    "1 2 0000 0 - - 65536 0 1 2 3 4",
+    "1 2 0000 0 - - 1 16 1 2 3 4",
+    "1 2 0000 0 - - 1 0 1 2 3 2147483648",
+    "1 2 0000 0 - - 1 0 1 2 3 -2147483649",
+    "1 2 000 0 - - 1 0 1 2 3 4",
+    "1 2 0000 0 - - 1 0 1 2 3 4 ",
+    "1 2 0000 0 - - 1 0 1 2 3 ",
+    "1 2 0000 0 - - 1 0 1 2 3 -",
+    "1 2 0000 0 - - 1 0 1 2 3 -0",
+    "01 2 0000 0 - - 1 0 1 2 3 4",
+  ])("just outside its kind, a sample is of wrong form: %s", (fields) => {
+    expect(decodeSampleInto(seal(`<sample ${fields}`), groups, newSample())).toBe("form");
+  });
+
+  test("the largest and smallest of every kind are read", () => {
+    const sample = newSample();
+    const line = seal(
+      "<sample 4294967295 4294967295 FFFF 255 4294967295 65535 65535 0 2147483647 -2147483648 0 -1",
+    );
+    expect(decodeSampleInto(line, groups, sample)).toBeNull();
+    expect([sample.seq, sample.ackSeq, sample.ackAge_ticks]).toEqual([
+      4294967295, 4294967295, 65535,
+    ]);
+    expect([...sample.values.slice(0, 4)]).toEqual([2147483647, -2147483648, 0, -1]);
+  });
+
   test("a slower group refreshes its channels and leaves the others' last values", () => {
     const sample = newSample();
     decodeSampleInto(seal("<sample 1 2 0000 0 - - 1 1 1 2 3 4 70 80"), groups, sample);
