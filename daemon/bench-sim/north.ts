@@ -34,11 +34,16 @@ export class North {
   #nextReading_ms: number;
 
   constructor(options: NorthOptions) {
-    if (options.bench.crystal === null) throw new Error("The built-in bench needs a crystal.");
     this.#options = options;
     this.#period_ms = 1000 / options.rate_perS;
     this.#nextReading_ms = this.#period_ms;
     const { bench, seed } = options;
+    const { crystal, cooling } = bench;
+    if (crystal === null || cooling === null) {
+      throw new Error(
+        "The built-in bench's file has no crystal or no cooling; both are simulated.",
+      );
+    }
     this.plant = new Plant({
       bench,
       crystal: bench.crystal as NonNullable<Bench["crystal"]>,

@@ -1,4 +1,4 @@
-import type { Bench, CrystalPart } from "../model/bench.ts";
+import type { Bench, CoolingPart, CrystalPart } from "../model/bench.ts";
 import { absorbedShare } from "../physics/crystal.ts";
 import { forward_mV, power_mW } from "../physics/diode.ts";
 import { advance, type TwoNodeState } from "../physics/thermal.ts";
@@ -20,6 +20,7 @@ import { Chance } from "./chance.ts";
 export interface PlantOptions {
   readonly bench: Bench;
   readonly crystal: CrystalPart;
+  readonly cooling: CoolingPart;
   readonly seed: number;
 }
 
@@ -49,6 +50,7 @@ export class Plant {
   readonly chance: Chance;
   readonly #bench: Bench;
   readonly #crystal: CrystalPart;
+  readonly #cooling: CoolingPart;
   #time_s = 0;
   #table_K = 0;
   #pump_nm = Number.NaN;
@@ -59,6 +61,7 @@ export class Plant {
   constructor(options: PlantOptions) {
     this.#bench = options.bench;
     this.#crystal = options.crystal;
+    this.#cooling = options.cooling;
     this.chance = new Chance(options.seed);
   }
 
@@ -77,8 +80,7 @@ export class Plant {
     const volts = forward_mV(this.#bench.diode, this.current_mA) / 1000;
     const heat_W = (volts * this.current_mA - this.pump_mW) / 1000;
     this.#table_K += ((TABLE_KperW * heat_W - this.#table_K) * dt_s) / TABLE_s;
-    const cooling = this.#bench.cooling;
-    const net = this.fan === 1 ? cooling : { ...cooling, ...slowerFan(cooling, this.fan) };
+    const net = this.fan === 1 ? this.#cooling : slowerFan(this.#cooling, this.fan);
     advance(net, this.heat, heat_W, this.room_degC + this.#table_K, dt_s);
   }
 
@@ -128,7 +130,8 @@ export class Plant {
   }
 }
 
-function slowerFan(cooling: Bench["cooling"], fan: number): { readonly sinkToRoom_KperW: number } {
+function slowerFan(cooling: CoolingPart, fan: number): CoolingPart {
   // Forced convection falls about as the 0.7th power of the flow; a still fan leaves a fifth.
-  return { sinkToRoom_KperW: cooling.sinkToRoom_KperW / Math.max(0.2, fan ** 0.7) };
+  const flow = Math.max(0.2, fan ** 0.7);
+  return { ...cooling, sinkToRoom_KperW: cooling.sinkToRoom_KperW / flow };
 }

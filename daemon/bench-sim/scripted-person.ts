@@ -13,10 +13,10 @@ export class ScriptedPerson {
   #asked = false;
 
   /** What to ask next, seeing that; null for nothing. */
-  look(snapshot: Snapshot): Question | null {
-    if (this.#asked || snapshot.state !== "standby" || snapshot.ceiling_mA === null) return null;
+  look(seen: Seen): Asked | null {
+    if (this.#asked || seen.state !== "standby" || seen.ceiling_mA === null) return null;
     this.#asked = true;
-    const current_mA = Math.min(SCRIPTED_mA, Math.floor(snapshot.ceiling_mA / 10) * 10);
+    const current_mA = Math.min(SCRIPTED_mA, Math.floor(seen.ceiling_mA / 10) * 10);
     return { verb: "arm", current_mA, asker: "scripted-person" };
   }
 
