@@ -8,7 +8,7 @@ interface Room {
   readonly rooms: readonly string[];
   /** Packages, `node:` modules by name, or `node:*` for all of them. */
   readonly packages: readonly string[];
-  /** Rooms of which only types may be imported. */
+  /** Rooms and packages of which only types may be imported: nothing of them is loaded. */
   readonly types?: readonly string[];
   /** No clock, timer, randomness, I/O or process; see purity.test.ts. */
   readonly pure?: true;
@@ -49,7 +49,15 @@ export const ROOMS_TABLE: readonly Room[] = [
   },
   {
     path: "daemon/desk",
-    rooms: [MODEL, PHYSICS, "daemon/control/client", "daemon/record/reader", "daemon/paths.ts"],
+    rooms: [
+      MODEL,
+      PHYSICS,
+      "daemon/control/api",
+      "daemon/control/client",
+      "daemon/record/reader",
+      "daemon/paths.ts",
+    ],
+    types: ["ws"],
     packages: ["node:*", "fastify", "@fastify/static", "@fastify/websocket", "cookie", "zod"],
   },
   {
@@ -96,15 +104,16 @@ export const PURE_ROOMS: readonly Room[] = ROOMS_TABLE.filter((room) => room.pur
 export function violation({ from, to, typeOnly }: Import): string | null {
   const room = roomOf(from);
   if (room === undefined) return `${from} belongs to no room of the table`;
+  const types = typeOnly ? (room.types ?? []) : [];
   if (/^(daemon|firmware-protocol|dashboards|test)\//.test(to)) {
+    const allowed = [...room.rooms, ...types];
     const target = roomOf(to);
     if (target === room) return null;
-    const allowed = [...room.rooms, ...(typeOnly ? (room.types ?? []) : [])];
     if (allowed.some((path) => opens(path, to))) return null;
     return `${from} imports ${to}; ${room.path} may import ${allowed.join(", ") || "no room"}`;
   }
   const name = packageOf(to);
-  if (room.packages.includes(name)) return null;
+  if (room.packages.includes(name) || types.includes(name)) return null;
   if (name.startsWith("node:") && room.packages.includes("node:*")) return null;
   return `${from} imports ${to}; ${room.path} may import ${room.packages.join(", ") || "no package"}`;
 }
