@@ -8,6 +8,8 @@ import { placeAt, refuseText } from "./text.ts";
 import { toBench } from "./to-bench.ts";
 import { type Read, readTree } from "./tree.ts";
 
+export { BENCH_BYTES_MAX } from "./text.ts";
+
 export type Parsed =
   /** `problems` holds warnings only. */
   | { readonly ok: true; readonly bench: Bench; readonly problems: readonly Problem[] }
