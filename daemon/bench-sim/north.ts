@@ -44,11 +44,7 @@ export class North {
         "The built-in bench's file has no crystal or no cooling; both are simulated.",
       );
     }
-    this.plant = new Plant({
-      bench,
-      crystal: bench.crystal as NonNullable<Bench["crystal"]>,
-      seed,
-    });
+    this.plant = new Plant({ bench, crystal, cooling, seed });
     this.#converters = new Converters(bench);
     this.controller = newController(options.module, { rate_perS: options.rate_perS, jitter: seed });
     this.controller.boot("power", options.tick);

@@ -1,5 +1,13 @@
-import type { Snapshot } from "../control/api.ts";
-import type { Question } from "../control/client.ts";
+/** What the person sees of the bench, and what the person asks: the words of the switch. */
+interface Seen {
+  readonly state: string;
+  readonly ceiling_mA: number | null;
+}
+interface Asked {
+  readonly verb: "arm";
+  readonly current_mA: number;
+  readonly asker: "scripted-person";
+}
 
 /** Current that the scripted person of bench "north" means, mA. */
 export const SCRIPTED_mA = 1800;
