@@ -31,7 +31,14 @@ export const ROOMS_TABLE: readonly Room[] = [
   },
   { path: "daemon/judge", rooms: [MODEL, PHYSICS], packages: [], pure: true },
   { path: "daemon/link", rooms: [MODEL, PROTOCOL], packages: [], pure: true },
-  { path: "daemon/bench-sim", rooms: [MODEL, PHYSICS, PROTOCOL], packages: [], pure: true },
+  {
+    path: "daemon/bench-sim",
+    rooms: [MODEL, PHYSICS, PROTOCOL],
+    // Its scripted person speaks to the switch like anybody, through whoever carries the words.
+    types: ["daemon/control/api", "daemon/control/client"],
+    packages: [],
+    pure: true,
+  },
   {
     path: "daemon/link/transports",
     rooms: [MODEL, "daemon/link", "daemon/bench-sim"],
