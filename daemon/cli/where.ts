@@ -26,7 +26,7 @@ export type Notice = z.infer<typeof Notice>;
 
 /** Folder of sockets and notices: the user's own, readable by nobody else. */
 export function runtimeFolder(): string {
-  const given = process.env["XDG_RUNTIME_DIR"];
+  const given = process.env.XDG_RUNTIME_DIR;
   const folder =
     given !== undefined && given !== ""
       ? join(given, "beamsitter")
@@ -39,7 +39,7 @@ export function runtimeFolder(): string {
 
 /** Folder where a bench's record is kept unless `--data` says otherwise. */
 export function dataFolder(bench: string): string {
-  const given = process.env["XDG_DATA_HOME"];
+  const given = process.env.XDG_DATA_HOME;
   const base = given !== undefined && given !== "" ? given : join(homedir(), ".local", "share");
   return join(base, "beamsitter", bench);
 }

@@ -52,7 +52,7 @@ export class Asking {
     answer(this.#made(request.verb, out.answer === ANSWER.done, value));
   }
 
-  /** Looks whether an exchange has ended; called after each batch of lines. */
+  /** Looks whether an exchange has ended; called after every step and at each deadline. */
   settle(now: Mono_ms): void {
     if (this.#pending.length === 0) return;
     this.#pending = this.#pending.filter((p) => !this.#ended(p, now));

@@ -44,6 +44,8 @@ export class Loop {
   plan: Plan | null = null;
   /** What stands between this bench file and this controller; empty where nothing does. */
   problems: readonly string[] = [];
+  /** Called after every step, while its outcome stands in `out`. */
+  onStep: () => void = () => {};
   /** Monotonic time of the last sample, or −Infinity. */
   lastSample_ms = Number.NEGATIVE_INFINITY;
   readonly #ports: LoopPorts;
@@ -222,6 +224,7 @@ export class Loop {
     step(this.plan, this.state, input, this.out);
     this.#carryOut(this.out);
     this.telling.outcome(this.out, input, this.#rows, this.session.manifest);
+    this.onStep();
   }
 
   /** Dark first, then at most one permit, then an exchange. Nothing else here can raise current. */

@@ -11,7 +11,6 @@ export interface Beside {
   readonly wall_ms: number;
   readonly now_ms: number;
   readonly recorder: { readonly behind_ms: number; readonly words: string };
-  readonly warnings: Snapshot["warnings"];
 }
 
 /** The caution that stands wherever light can be switched on. */
@@ -58,7 +57,7 @@ export function snapshotOf(loop: Loop, beside: Beside): Snapshot {
     since: loop.telling.since,
     sentence: stateSentence(namesOf(bench), view, age_ms),
     next: nextSentence(namesOf(bench), view, age_ms),
-    warnings: beside.warnings,
+    warnings: [...loop.telling.warnings].map(([hazard, w]) => ({ hazard, ...w })),
     age_ms: known(age_ms),
     link: linkPart(loop, view),
     recorder: beside.recorder,

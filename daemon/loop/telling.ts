@@ -32,6 +32,8 @@ export class Telling {
   readonly #ports: LoopPorts;
   #nextId = 1;
   #session: SessionKind | "end" = "end";
+  /** Warnings that stand now, by row, oldest first. */
+  readonly warnings = new Map<string, { readonly words: string; readonly since: Wall_ms }>();
   /** When the state last changed, wall ms. */
   since: Wall_ms;
   #state: number = STATE.offline;
@@ -90,7 +92,10 @@ export class Telling {
     const a = out.eventA[i] as number;
     const b = out.eventB[i] as number;
     const told = eventWords(kind, hazard, a, b);
-    this.say(kind, hazardId(hazard), told.words, told.weight, input, a, b);
+    const id = hazardId(hazard);
+    if (kind === "warning") this.warnings.set(id, { words: told.words, since: this.#ports.wall() });
+    if (kind === "warning-over") this.warnings.delete(id);
+    this.say(kind, id, told.words, told.weight, input, a, b);
   }
 
   /** Numbers, words and weight of one event, to the recorder first and then to watchers. */

@@ -1,0 +1,120 @@
+import { type ChildProcess, fork } from "node:child_process";
+import { randomBytes } from "node:crypto";
+import { setPriority } from "node:os";
+import { fileURLToPath } from "node:url";
+import type { DeskConfig, FromDesk } from "../desk/config.ts";
+import { builtFile } from "../paths.ts";
+import { reasonOf } from "./say.ts";
+
+/** A desk that has not told that it lives for this long is ended and started anew, ms. */
+const SILENCE_MS_MAX = 5000;
+/** Pause before a desk that ended is started again, ms. */
+const AGAIN_MS = 500;
+/** Less favoured than the judging thread by this much (nice). */
+const NICE = 10;
+
+/**
+ * The desk as a child process: lower priority, killed and restarted when it hangs. What the judge
+ * decides never waits for it.
+ */
+export class DeskProcess {
+  readonly #config: DeskConfig;
+  readonly #onWords: (words: string) => void;
+  #child: ChildProcess | null = null;
+  #port: number;
+  #heard_ms = 0;
+  #ended = false;
+  readonly #watch: NodeJS.Timeout;
+  #ready: (() => void)[] = [];
+
+  constructor(config: DeskConfig, onWords: (words: string) => void) {
+    this.#config = config;
+    this.#port = config.port;
+    this.#onWords = onWords;
+    this.#start();
+    this.#watch = setInterval(() => this.#look(), 1000);
+  }
+
+  /** Resolves when the desk listens for the first time, or has failed for good. */
+  listening(): Promise<void> {
+    if (this.#heard_ms > 0) return Promise.resolve();
+    return new Promise((resolve) => this.#ready.push(resolve));
+  }
+
+  get port(): number {
+    return this.#port;
+  }
+
+  get pid(): number {
+    return this.#child?.pid ?? 0;
+  }
+
+  /** The address that signs a page in once, or null while no desk listens. */
+  sign(): string | null {
+    const child = this.#child;
+    if (child === null || !child.connected || this.#heard_ms === 0) return null;
+    const code = randomBytes(18).toString("base64url");
+    child.send({ kind: "code", code });
+    return `${this.address()}sign?code=${code}`;
+  }
+
+  address(): string {
+    const host = this.#config.host.includes(":") ? `[${this.#config.host}]` : this.#config.host;
+    return `http://${host}:${this.#port}/`;
+  }
+
+  close(): void {
+    this.#ended = true;
+    clearInterval(this.#watch);
+    this.#child?.kill("SIGKILL");
+  }
+
+  #start(): void {
+    // The port taken first is kept over restarts, so that open pages find the desk again.
+    const config = { ...this.#config, port: this.#port };
+    const child = fork(
+      fileURLToPath(builtFile("daemon/desk/process.js")),
+      [JSON.stringify(config)],
+      {
+        stdio: ["ignore", "ignore", "inherit", "ipc"],
+        execArgv: ["--single-threaded-gc"],
+      },
+    );
+    this.#child = child;
+    this.#heard_ms = 0;
+    if (child.pid !== undefined) this.#lower(child.pid);
+    child.on("message", (message) => this.#heard(message as FromDesk));
+    child.on("error", (error) => this.#onWords(`The desk did not start: ${error.message}.`));
+    child.on("exit", () => {
+      if (this.#ended) return;
+      this.#child = null;
+      this.#onWords("The desk ended and is started again; judge and record go on.");
+      setTimeout(() => this.#ended || this.#start(), AGAIN_MS);
+    });
+  }
+
+  #lower(pid: number): void {
+    try {
+      setPriority(pid, NICE);
+    } catch (error) {
+      this.#onWords(`The desk's priority could not be lowered: ${reasonOf(error)}.`);
+    }
+  }
+
+  #heard(message: FromDesk): void {
+    this.#heard_ms = performance.now();
+    if (message.kind === "listening") {
+      this.#port = message.port;
+      for (const ready of this.#ready.splice(0)) ready();
+    } else if (message.kind === "failed") {
+      this.#onWords(message.words);
+      for (const ready of this.#ready.splice(0)) ready();
+    }
+  }
+
+  #look(): void {
+    if (this.#heard_ms === 0 || performance.now() - this.#heard_ms < SILENCE_MS_MAX) return;
+    this.#onWords("The desk hangs and is ended; judge and record go on.");
+    this.#child?.kill("SIGKILL");
+  }
+}
