@@ -38,7 +38,7 @@ function* filesBelow(folder) {
 /** One hash over names, sizes and times: also sees a file that went away or became older. */
 function stampOf(files) {
   const hash = createHash("sha256");
-  for (const path of [...files, "tsconfig.json", "vite.config.ts", "package-lock.json"]) {
+  for (const path of [...files, "tsconfig.json", "package-lock.json"]) {
     const { size, mtimeMs } = statSync(join(root, path));
     hash.update(`${path} ${size} ${mtimeMs}\n`);
   }
@@ -98,7 +98,8 @@ function removeLeftovers(outputs) {
 async function makePages() {
   if (!existsSync(join(root, "dashboards", "index.html"))) return null;
   const vite = join(root, "node_modules", "vite", "bin", "vite.js");
-  const args = [vite, "build", "--logLevel", "warn"];
+  const to = ["--outDir", join(DIST, "pages"), "--emptyOutDir"];
+  const args = [vite, "build", "dashboards", ...to, "--logLevel", "warn"];
   const code = await runTool("building the pages", process.execPath, args);
   return code === 0 ? null : "The pages do not build; the message of vite stands above.";
 }

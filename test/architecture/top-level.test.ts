@@ -10,7 +10,6 @@ const CONFIGURATION = [
   "tsconfig.json",
   "biome.json",
   "knip.json",
-  "vite.config.ts",
   "vitest.config.ts",
 ];
 /** Made by installing, building and testing; ignored by git. */
