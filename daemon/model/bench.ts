@@ -39,7 +39,7 @@ export interface ControllerPart {
 
 export interface DiodePart {
   readonly wavelength_nm: number;
-  /** Laws of METHODS: Ith = threshold · exp((T−ref)/T0), η = slope · exp(−(T−ref)/T1). */
+  /** Exponential laws, common practice: Ith = threshold · exp((T−ref)/T0), η = slope · exp(−(T−ref)/T1). */
   readonly threshold_mA: number;
   readonly slope_mWpermA: number;
   readonly ref_degC: number;

@@ -1,7 +1,7 @@
 import type { DeratingPoint, DiodePart } from "../model/bench.ts";
 
 /**
- * Laws of a laser diode at a case temperature, after METHODS of the trade: exponential threshold and
+ * Laws of a laser diode at a case temperature, as the trade writes them: exponential threshold and
  * efficiency, a straight forward voltage. Functions on numbers, without allocation.
  */
 
