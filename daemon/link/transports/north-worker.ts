@@ -1,0 +1,3 @@
+import { runNorth } from "./north-live.ts";
+
+runNorth();
