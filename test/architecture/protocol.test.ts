@@ -56,11 +56,15 @@ describe("every message", () => {
   });
 
   test.each(verbsTo("controller"))("%s has a handler in the controller core", (verb) => {
-    expect(core.includes(`"${verb}"`)).toBe(true);
+    expect(core.includes(`{"${verb}"`), "an entry of the table of verbs").toBe(true);
+    const handler = new RegExp(`^void core_obey_${verb}\\([^;]*\\) \\{`, "m");
+    expect(handler.test(core), `a function core_obey_${verb}`).toBe(true);
   });
 
-  test.each(verbsTo("host"))("%s is written by the controller core", (verb) => {
-    expect(new RegExp(`"<?${verb}[ "]`).test(core)).toBe(true);
+  // `say` carries words for a person; a board may do without.
+  const written = verbsTo("host").filter((verb) => verb !== "say");
+  test.each(written)("%s is written by the controller core", (verb) => {
+    expect(core.includes(`"${verb}"`)).toBe(true);
   });
 });
 
