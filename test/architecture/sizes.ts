@@ -7,7 +7,7 @@ export const WORKER_LINES_MAX = 15;
 
 /** Most lines that a file may have, by what it is. */
 function linesMax({ path, text }: Source): number {
-  if (/^daemon\/[^/]+\/worker\.ts$/.test(path)) return WORKER_LINES_MAX;
+  if (/^daemon\/.+\/(worker|process|[a-z]+-worker)\.ts$/.test(path)) return WORKER_LINES_MAX;
   const isCommand = path.startsWith("daemon/cli/") && /from "commander"/.test(text);
   return isCommand ? COMMAND_LINES_MAX : FILE_LINES_MAX;
 }
