@@ -6,6 +6,7 @@ import type {
   TransportSpec,
 } from "../model/bench.ts";
 import type { Conversion, Law } from "../model/conversion.ts";
+import { kindFindings } from "./channel-kinds.ts";
 import type { Finding } from "./problem.ts";
 import type { BenchFile } from "./schema.ts";
 import { hazardLevels } from "./schema-hazards.ts";
@@ -125,6 +126,13 @@ type ChannelFile = NonNullable<BenchFile["channels"]>[string];
 function conversionsOf(file: BenchFile, findings: Finding[]): Record<string, Conversion> {
   const conversions: Record<string, Conversion> = Object.create(null);
   for (const [name, channel] of Object.entries(file.channels ?? {})) {
+    findings.push(
+      ...kindFindings(name, {
+        error: channel.error,
+        perCount: channel.linear?.["per-count"] ?? null,
+        offset: channel.linear?.offset ?? null,
+      }),
+    );
     const laws = lawsOf(channel);
     const [law] = laws;
     if (law !== undefined && laws.length === 1) {

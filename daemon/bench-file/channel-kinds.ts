@@ -1,0 +1,54 @@
+import { KINDS, type QuantityKind } from "../model/quantity-units.ts";
+import type { Finding } from "./problem.ts";
+import type { FreeQuantity } from "./schema-channels.ts";
+
+/** What channels of these names are measured in. Other names are free. */
+const BY_NAME: Readonly<Record<string, QuantityKind>> = {
+  set: "current",
+  current: "current",
+  case: "temperature",
+  sink: "temperature",
+  ambient: "temperature",
+  photodiode: "power",
+  forward: "voltage",
+  supply: "voltage",
+  humidity: "ratio",
+};
+
+export interface ChannelUnits {
+  readonly error: FreeQuantity;
+  readonly perCount: FreeQuantity | null;
+  readonly offset: FreeQuantity | null;
+}
+
+/** Units of a channel's conversion that do not fit its name or each other. */
+export function kindFindings(name: string, units: ChannelUnits): Finding[] {
+  const { error, perCount, offset } = units;
+  // Sensors with a law of their own read temperature; a linear one says its kind by its unit.
+  const lawKind = perCount === null ? "temperature" : scaleOf(offset?.kind ?? perCount.kind);
+  const value = BY_NAME[name] ?? lawKind;
+  const step = value === "temperature" ? "difference" : value;
+  return [
+    ...mismatch([name, "error"], error, step),
+    ...(perCount === null ? [] : mismatch([name, "linear", "per-count"], perCount, step)),
+    ...(offset === null ? [] : mismatch([name, "linear", "offset"], offset, value)),
+  ];
+}
+
+/** A step in kelvin is a step of a temperature. */
+const scaleOf = (kind: QuantityKind): QuantityKind =>
+  kind === "difference" ? "temperature" : kind;
+
+function mismatch(path: readonly string[], found: FreeQuantity, wanted: QuantityKind): Finding[] {
+  if (found.kind === wanted) return [];
+  return [
+    {
+      level: "error",
+      code: "unit",
+      path: ["channels", ...path],
+      found: KINDS[found.kind].name,
+      wanted: `${KINDS[wanted].name}, such as ${KINDS[wanted].example}`,
+      do: `write it in the unit of ${KINDS[wanted].name}`,
+    },
+  ];
+}
