@@ -14,17 +14,26 @@ interface Options {
 /** `demo`: a night of the built-in bench through the real link, judge and recorder. */
 export const demoCommand = (): Command =>
   new Command("demo")
-    .description("run a simulated night of bench north through the real controller, judge and record")
+    .description(
+      "run a simulated night of bench north through the real controller, judge and record",
+    )
     .option("--for <time>", "how long the night is", "8h")
     .option("--as-fast-as-possible", "without waiting; otherwise sixty times as fast as life")
     .option("--seed <number>", "the same seed gives the same night", "7")
     .option("--data <folder>", "keep the record there; otherwise it is thrown away")
     .option("--json", "one JSON object")
-    .addHelpText("after", "\nExample:\n  beamsitter demo --for 8h --as-fast-as-possible --seed 7 --json")
+    .addHelpText(
+      "after",
+      "\nExample:\n  beamsitter demo --for 8h --as-fast-as-possible --seed 7 --json",
+    )
     .action(async (options: Options) => {
       const seed = Number(options.seed);
       if (!Number.isInteger(seed)) {
-        throw new Trouble(`--seed ${options.seed} is no whole number.`, "Write --seed 7.", EXIT.usage);
+        throw new Trouble(
+          `--seed ${options.seed} is no whole number.`,
+          "Write --seed 7.",
+          EXIT.usage,
+        );
       }
       const summary = await simulateNight({
         length_ms: durationOf(options.for),
@@ -42,6 +51,7 @@ function sentences(s: Awaited<ReturnType<typeof simulateNight>>): string[] {
     `The case reached ${s.highestCaseC.toFixed(1)} °C; the current was held down for ${(s.cappedSeconds / 60).toFixed(0)} min; ${s.warnings} warnings.`,
   ];
   if (s.trips.length === 0) lines.push("Nothing tripped.");
-  for (const t of s.trips) lines.push(`Tripped by ${t.firstOut} after ${t.atSeconds.toFixed(1)} s.`);
+  for (const t of s.trips)
+    lines.push(`Tripped by ${t.firstOut} after ${t.atSeconds.toFixed(1)} s.`);
   return lines;
 }
