@@ -100,6 +100,8 @@ export function ntc_degC(ohm: number, r25_ohm: number, beta_K: number): number {
 
 /** Steinhart and Hart 1968: 1/T = A + B·ln R + C·(ln R)³. */
 export function steinhartHart_degC(ohm: number, a: number, b: number, c: number): number {
+  if (ohm <= 0) return Number.POSITIVE_INFINITY;
+  if (ohm === Number.POSITIVE_INFINITY) return Number.NEGATIVE_INFINITY;
   const ln = Math.log(ohm);
   return fromInverse_K(a + b * ln + c * ln * ln * ln);
 }
