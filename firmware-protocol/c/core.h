@@ -133,7 +133,6 @@ struct core {
 
   uint32_t tick; /* of this pass */
   uint8_t started;
-  uint8_t reset_kind;
 
   uint8_t state;
   uint8_t cause; /* of the latch while tripped, else of the last dark */
@@ -143,7 +142,7 @@ struct core {
   uint32_t arms;
   uint16_t offers;
   uint8_t wrong;
-  uint8_t asking;              /* an ask arm waits for the boot counter to be written */
+  struct core_since asking;    /* on: an ask arm waits for the boot counter to be written */
   struct core_since backoff;   /* on: arming is refused for 30 s */
   struct core_since opened;    /* on: armed, no permit yet */
   struct core_since idle;      /* on: armed, no aim above zero */
@@ -195,8 +194,9 @@ struct core {
 
   /* Samples and anchors. */
   uint32_t seq;
-  uint32_t anchor_seq; /* of the newest anchor */
-  uint32_t anchor_tick[CORE_ANCHORS];
+  uint32_t anchor_seq;                /* of the newest anchor */
+  uint32_t anchor_newest_tick;        /* its tick, whole */
+  uint16_t anchor_tick[CORE_ANCHORS]; /* low half: the ring never spans more than the longest term */
   uint8_t anchor_newest;
   uint8_t anchor_count;
   uint8_t anchor_wait; /* samples until the next anchor */
@@ -257,7 +257,10 @@ void core_reading(struct core *c, const int32_t *values, uint32_t tick);
 /** Inputs as read now, 1 for on, closed, turning, moved. Main loop or interrupt; cuts on opening. */
 void core_inputs(struct core *c, uint8_t key_on, uint8_t loop_closed, uint8_t fan_ok, uint8_t hand);
 
-/** One whole pass of the main loop: one line, expiry, slew, drive, and last of all port->alive. */
+/**
+ * One whole pass of the main loop: one line, expiry, slew, drive, and last of all port->alive.
+ * `tick` is never earlier than one given before. Expiry is found here: pass often (1 ms is usual).
+ */
 void core_pass(struct core *c, uint32_t tick);
 
 /** 1 while a whole received line waits for another pass. */
