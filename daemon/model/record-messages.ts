@@ -51,6 +51,8 @@ export type FromRecorder =
       readonly kind: "state";
       readonly readRows: number;
       readonly lostRows: number;
+      /** Whether the last write failed: samples and events wait in memory, or are being lost. */
+      readonly failing: boolean;
       readonly words: string;
     }
   | { readonly kind: "flushed"; readonly id: number }
@@ -58,6 +60,7 @@ export type FromRecorder =
 
 /** The latch that outlives the daemon: written with the trip's event, cleared by reset. */
 export interface StoredLatch {
+  /** Cause code; −1 where the bench is not latched. */
   readonly cause: number;
   readonly wall: Wall_ms;
   readonly serial: string;

@@ -1,0 +1,309 @@
+import { createHash } from "node:crypto";
+import type Database from "better-sqlite3";
+import type { BenchEvent } from "../model/event.ts";
+import type { Manifest } from "../model/manifest.ts";
+import type { JournalEntry, SessionKind, StoredLatch } from "../model/record-messages.ts";
+import { CODEC, type Coded } from "./blocks.ts";
+import { type FolderLock, lockFolder, openForWriting } from "./folder.ts";
+import { type LatchRow, latchFrom } from "./latch.ts";
+import { errorCode } from "./problem.ts";
+import { repairTail } from "./repair.ts";
+import type { BlockIdentity } from "./staging.ts";
+
+/** Rows of a block or of a chunk of the growing one: where they are in time, and their bytes. */
+export interface StoredRows extends BlockIdentity {
+  readonly t0: number;
+  readonly t1: number;
+  readonly input0: number;
+  readonly input1: number;
+  readonly n: number;
+  readonly coded: Coded;
+}
+
+/** One thing to write. Ops are data, so that what could not be written is tried again unchanged. */
+export type WriteOp =
+  | {
+      readonly op: "run";
+      readonly run: number;
+      readonly bench: string;
+      readonly judgeVersion: number;
+      readonly benchFile: number;
+      readonly at: number;
+      readonly latch: StoredLatch | null;
+    }
+  | { readonly op: "bench-file"; readonly id: number; readonly text: string }
+  | { readonly op: "manifest"; readonly id: number; readonly manifest: Manifest }
+  | {
+      readonly op: "session";
+      readonly session: number;
+      readonly run: number;
+      readonly bench: string;
+      readonly kind: SessionKind;
+      readonly benchFile: number;
+      readonly at: number;
+    }
+  | { readonly op: "session-end"; readonly session: number; readonly at: number }
+  | { readonly op: "event"; readonly run: number; readonly event: BenchEvent }
+  | {
+      readonly op: "journal";
+      readonly run: number;
+      readonly entry: JournalEntry;
+      readonly benchFile: number;
+      readonly manifest: number | null;
+    }
+  | { readonly op: "tail"; readonly rows: StoredRows }
+  /** `unseen` of its rows were in no chunk of the tail. */
+  | {
+      readonly op: "block";
+      readonly rows: StoredRows;
+      readonly rollup: Coded;
+      readonly unseen: number;
+    }
+  | {
+      readonly op: "gap";
+      readonly bench: string;
+      readonly from_wall_ms: number;
+      readonly to_wall_ms: number;
+    }
+  | { readonly op: "lost"; readonly run: number; readonly samples: number }
+  | { readonly op: "latch"; readonly bench: string; readonly latch: StoredLatch };
+
+export interface StoreOptions {
+  /** "power-cut" (the default) syncs each commit to the disk; "none" is for simulations only. */
+  readonly durability?: "power-cut" | "none";
+}
+
+const STATEMENTS = {
+  run: `INSERT INTO runs (id, bench, judge_version, bench_file, started_wall_ms,
+    latch_cause, latch_wall_ms, latch_serial, latch_lit) VALUES (?,?,?,?,?,?,?,?,?)`,
+  "bench-file": "INSERT INTO bench_files (id, hash, text) VALUES (?,?,?)",
+  manifest: "INSERT INTO manifests (id, crc, json) VALUES (?,?,?)",
+  session: `INSERT INTO sessions (id, run, bench, kind, bench_file, started_wall_ms, last_wall_ms)
+    VALUES (?,?,?,?,?,?,?)`,
+  "session-end": "UPDATE sessions SET ended_wall_ms = ? WHERE id = ?",
+  event: `INSERT INTO events (id, run, bench, input, tick, mono_ms, wall_ms, kind, hazard, data)
+    VALUES (?,?,?,?,?,?,?,?,?,?)`,
+  journal: "INSERT OR REPLACE INTO journal VALUES (?,?,?,?,?,?,?,?,?,?,?,?)",
+  tail: `INSERT INTO tail (block, session, run, t0, t1, input0, input1, n, manifest, bench_file,
+    codec, crc, blob) VALUES (?,?,?,?,?,?,?,?,?,?,?,?,?)`,
+  seen: `UPDATE sessions SET samples = samples + ?, last_wall_ms = max(last_wall_ms, ?)
+    WHERE id = ?`,
+  block: `INSERT INTO blocks (id, session, run, t0, t1, input0, input1, n, manifest, bench_file,
+    codec, crc, blob) VALUES (?,?,?,?,?,?,?,?,?,?,?,?,?)`,
+  rollup: "INSERT INTO rollup_1s (block, codec, crc, blob) VALUES (?,?,?,?)",
+  tailDone: "DELETE FROM tail WHERE block = ?",
+  gap: "INSERT INTO gaps (bench, from_wall_ms, to_wall_ms) VALUES (?,?,?)",
+  lost: "UPDATE runs SET lost_samples = lost_samples + ? WHERE id = ?",
+  latch: "INSERT OR REPLACE INTO latch (bench, cause, wall_ms, serial, lit) VALUES (?,?,?,?,?)",
+} as const;
+type StatementName = keyof typeof STATEMENTS;
+
+/**
+ * The write side of a data folder. There is at most one, for the folder is locked while it is open.
+ * Ids are counted here, in memory, so that a write that failed can be repeated as it was.
+ */
+export class Store {
+  readonly folder: string;
+  /** Chunks of an earlier, killed recorder that could not be read when this store was opened. */
+  readonly faults: readonly string[];
+  readonly #lock: FolderLock;
+  readonly #db: Database.Database;
+  readonly #statements: Record<StatementName, Database.Statement>;
+  readonly #write: (ops: readonly WriteOp[]) => void;
+  readonly #next: { run: number; session: number; block: number };
+  readonly #benchFiles: Map<string, number>;
+  readonly #manifests: Map<string, number>;
+
+  private constructor(folder: string, lock: FolderLock, db: Database.Database) {
+    this.folder = folder;
+    this.faults = repairTail(db);
+    this.#lock = lock;
+    this.#db = db;
+    this.#statements = Object.fromEntries(
+      Object.entries(STATEMENTS).map(([name, sql]) => [name, db.prepare(sql)]),
+    ) as Record<StatementName, Database.Statement>;
+    this.#write = db.transaction((ops: readonly WriteOp[]) => {
+      for (const op of ops) this.#apply(op);
+    }).immediate;
+    this.#next = {
+      run: this.#max("runs") + 1,
+      session: this.#max("sessions") + 1,
+      block: this.#max("blocks") + 1,
+    };
+    const files = db.prepare("SELECT id, text FROM bench_files").all() as FileRow[];
+    this.#benchFiles = new Map(files.map((row) => [row.text, row.id]));
+    const manifests = db.prepare("SELECT id, json AS text FROM manifests").all() as FileRow[];
+    this.#manifests = new Map(manifests.map((row) => [row.text, row.id]));
+  }
+
+  /**
+   * Opens a data folder for writing: takes its lock, makes or migrates its file, and packs what a
+   * killed recorder left unpacked. Throws a RecordProblem that says what to do.
+   */
+  static open(folder: string, options: StoreOptions = {}): Store {
+    const lock = lockFolder(folder);
+    try {
+      const db = openForWriting(folder, options.durability ?? "power-cut");
+      return new Store(folder, lock, db);
+    } catch (error) {
+      lock.release();
+      throw error;
+    }
+  }
+
+  /** Writes all of `ops` or, where it throws, none of them. Durable when it returns. */
+  write(ops: readonly WriteOp[]): void {
+    if (ops.length > 0) this.#write(ops);
+  }
+
+  nextRun(): number {
+    return this.#next.run++;
+  }
+  nextSession(): number {
+    return this.#next.session++;
+  }
+  nextBlock(): number {
+    return this.#next.block++;
+  }
+
+  /** Row id of a bench file's text; where it is new, an op that stores it is added to `ops`. */
+  benchFileId(text: string, ops: WriteOp[]): number {
+    return idOf(this.#benchFiles, text, (id) => ops.push({ op: "bench-file", id, text }));
+  }
+
+  /** Row id of a manifest; where it is new, an op that stores it is added to `ops`. */
+  manifestId(manifest: Manifest, ops: WriteOp[]): number {
+    const json = JSON.stringify(manifest);
+    return idOf(this.#manifests, json, (id) => ops.push({ op: "manifest", id, manifest }));
+  }
+
+  get lastEventId(): number {
+    return this.#max("events");
+  }
+
+  /** The latch of a bench as the last daemon left it; null for a bench never armed. */
+  latchOf(bench: string): StoredLatch | null {
+    const row = this.#db
+      .prepare("SELECT cause, wall_ms, serial, lit FROM latch WHERE bench = ?")
+      .get(bench) as LatchRow | undefined;
+    return row === undefined ? null : latchFrom(row);
+  }
+
+  /** Civil time of the last sample kept of a bench, or null. */
+  lastSampleOf(bench: string): number | null {
+    const row = this.#db
+      .prepare("SELECT max(last_wall_ms) AS at FROM sessions WHERE bench = ? AND samples > 0")
+      .get(bench) as { at: number | null };
+    return row.at;
+  }
+
+  /** Closes the file and gives the folder free. */
+  close(): void {
+    this.#db.close();
+    this.#lock.release();
+  }
+
+  #max(table: "runs" | "sessions" | "blocks" | "events"): number {
+    const row = this.#db.prepare(`SELECT max(id) AS id FROM ${table}`).get();
+    return (row as { id: number | null }).id ?? 0;
+  }
+
+  #apply(op: WriteOp): void {
+    const run = (name: StatementName, ...values: unknown[]): void =>
+      void this.#statements[name].run(...values);
+    switch (op.op) {
+      case "run":
+        run(
+          "run",
+          op.run,
+          op.bench,
+          op.judgeVersion,
+          op.benchFile,
+          op.at,
+          ...latchValues(op.latch),
+        );
+        break;
+      case "bench-file":
+        run("bench-file", op.id, sha256(op.text), op.text);
+        break;
+      case "manifest":
+        run("manifest", op.id, op.manifest.id, JSON.stringify(op.manifest));
+        break;
+      case "session":
+        run("session", op.session, op.run, op.bench, op.kind, op.benchFile, op.at, op.at);
+        break;
+      case "session-end":
+        run("session-end", op.at, op.session);
+        break;
+      case "event":
+        this.#event(op.run, op.event);
+        break;
+      case "journal": {
+        const e = op.entry;
+        const asked = [e.request, e.asker, e.requestId, e.value, e.fact, e.factValue];
+        run("journal", op.run, e.input, e.kind, e.now_ms, ...asked, op.benchFile, op.manifest);
+        break;
+      }
+      case "tail":
+        run("tail", ...rowValues(op.rows));
+        run("seen", op.rows.n, op.rows.t1, op.rows.session);
+        break;
+      case "block":
+        run("block", ...rowValues(op.rows));
+        run("rollup", op.rows.block, CODEC, op.rollup.crc, op.rollup.blob);
+        run("tailDone", op.rows.block);
+        run("seen", op.unseen, op.rows.t1, op.rows.session);
+        break;
+      case "gap":
+        run("gap", op.bench, op.from_wall_ms, op.to_wall_ms);
+        break;
+      case "lost":
+        run("lost", op.samples, op.run);
+        break;
+      case "latch":
+        run("latch", op.bench, ...latchValues(op.latch));
+        break;
+      default:
+        op satisfies never;
+    }
+  }
+
+  /** An event is never dropped for its number: where that is taken, it gets the next free one. */
+  #event(run: number, event: BenchEvent): void {
+    const { bench, input, tick, mono, wall, kind, hazard } = event;
+    const rest = [run, bench, input, tick, mono, wall, kind, hazard, JSON.stringify(event.data)];
+    try {
+      this.#statements.event.run(event.id, ...rest);
+    } catch (error) {
+      if (errorCode(error) !== "SQLITE_CONSTRAINT_PRIMARYKEY") throw error;
+      this.#statements.event.run(this.#max("events") + 1, ...rest);
+    }
+  }
+}
+
+interface FileRow {
+  readonly id: number;
+  readonly text: string;
+}
+
+function latchValues(latch: StoredLatch | null): (number | string | null)[] {
+  if (latch === null) return [null, null, null, null];
+  return [latch.cause, latch.wall, latch.serial, latch.lit ? 1 : 0];
+}
+
+const rowValues = (r: StoredRows): unknown[] => [
+  ...[r.block, r.session, r.run, r.t0, r.t1, r.input0, r.input1, r.n, r.manifest, r.benchFile],
+  ...[CODEC, r.coded.crc, r.coded.blob],
+];
+
+function idOf(known: Map<string, number>, text: string, isNew: (id: number) => void): number {
+  const found = known.get(text);
+  if (found !== undefined) return found;
+  const id = Math.max(0, ...known.values()) + 1;
+  known.set(text, id);
+  isNew(id);
+  return id;
+}
+
+/** Hash by which a bench file is named: SHA-256 of its text, in hex. */
+export const sha256 = (text: string): string => createHash("sha256").update(text).digest("hex");

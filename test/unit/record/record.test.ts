@@ -1,0 +1,190 @@
+import { afterEach, describe, expect, test } from "vitest";
+import { Ring, ROW, ringBytes } from "../../../daemon/model/ring.ts";
+import { wall } from "../../../daemon/model/times.ts";
+import { openReader } from "../../../daemon/record/reader.ts";
+import {
+  event,
+  MANIFEST,
+  publish,
+  recording,
+  recordRows,
+  rowMaker,
+  START_MS,
+  scratchFolder,
+} from "./synthetic.ts";
+
+let scratch = scratchFolder();
+afterEach(() => {
+  scratch.remove();
+  scratch = scratchFolder();
+});
+const every50ms = (i: number): number => i * 50;
+
+describe("what goes in comes out", () => {
+  test("inputs come back in order and bit for bit, journal between samples", () => {
+    const { folder } = scratch;
+    const { ring, recorder } = recording(folder, 8000);
+    recorder.take({ kind: "manifest", ringRow: 0, manifest: MANIFEST });
+    recorder.take({ kind: "session", ringRow: 0, session: "lit", at: wall(START_MS) });
+    const make = rowMaker(1, every50ms);
+    const expected: { n: number; now_ms: number; kind: number }[] = [];
+    const rows = new Map<number, Float64Array>();
+    let input = 0;
+    for (let i = 0; i < 7000; i++) {
+      if (i % 500 === 3) {
+        input++;
+        const entry = { input, kind: 1, now_ms: i + 0.3, request: 1, asker: 2, requestId: i };
+        recorder.take({
+          kind: "journal",
+          entry: { ...entry, value: 0.1 + i, fact: 0, factValue: 0 },
+        });
+        expected.push({ n: input, now_ms: i + 0.3, kind: 1 });
+      }
+      const row = make(i);
+      row[ROW.input] = ++input;
+      rows.set(input, row);
+      expected.push({ n: input, now_ms: row[ROW.mono_ms] as number, kind: 0 });
+      publish(ring, row);
+      if (i % 1000 === 0) recorder.drain();
+    }
+    recorder.close();
+    const reader = openReader(folder);
+    const found: typeof expected = [];
+    for (const got of reader.inputs(1)) {
+      found.push({ n: got.n, now_ms: got.now_ms, kind: got.kind });
+      if (got.kind === 1) {
+        expect(got.value).toBe(0.1 + got.requestId);
+        continue;
+      }
+      const row = rows.get(got.n) as Float64Array;
+      expect(got.drift).toBe(row[ROW.drift]);
+      expect(got.jump_ms).toBe(row[ROW.jump_ms]);
+      expect(got.newest + 2 * got.portDrained).toBe(row[ROW.gate]);
+      expect(got.sample.seq).toBe(row[ROW.seq]);
+      expect(got.sample.tick).toBe(row[ROW.tick]);
+      expect(got.sample.ackSeq).toBe(row[ROW.ackSeq]);
+      expect([...got.sample.values]).toEqual([...row.subarray(ROW.values)]);
+      expect(got.sample.fresh[40]).toBe(row[ROW.group] === 2 ? 1 : 0);
+      expect(got.sample.fresh[4]).toBe(row[ROW.group] === 1 ? 1 : 0);
+    }
+    expect(found).toEqual(expected);
+    expect(reader.runs()).toMatchObject([{ bench: "north", latch: null, lostSamples: 0 }]);
+    expect(reader.sessions()).toMatchObject([{ kind: "lit", samples: 7000 }]);
+    expect(reader.benchText(1)).toBe("name: north\n");
+    reader.close();
+  });
+
+  test("events come back whole, and numbers go on where they left off", () => {
+    const { folder } = scratch;
+    const first = recording(folder);
+    first.recorder.take({ kind: "event", event: event(1, "connected") });
+    first.recorder.take({ kind: "event", event: event(2, "warning", "case-over") });
+    first.recorder.close();
+    const second = recording(folder);
+    expect(second.recorder.lastEventId).toBe(2);
+    // A number used twice keeps both events.
+    second.recorder.take({ kind: "event", event: event(2, "desk") });
+    second.recorder.close();
+    const reader = openReader(folder);
+    const all = { from: wall(0), to: wall(START_MS * 2) };
+    expect(reader.events(all)).toEqual([
+      event(1, "connected"),
+      event(2, "warning", "case-over"),
+      { ...event(2, "desk"), id: 3 },
+    ]);
+    expect(reader.events(all, "south")).toEqual([]);
+    expect(reader.eventsOfRun(2).map((e) => e.kind)).toEqual(["desk"]);
+    reader.close();
+  });
+
+  test("sessions, bench files and manifests begin at the row they name", () => {
+    const { folder } = scratch;
+    const { ring, recorder } = recording(folder);
+    const make = rowMaker(2, every50ms);
+    recorder.take({ kind: "manifest", ringRow: 0, manifest: MANIFEST });
+    for (let i = 0; i < 10; i++) publish(ring, make(i));
+    recorder.take({ kind: "session", ringRow: 10, session: "lit", at: wall(START_MS + 500) });
+    recorder.take({ kind: "bench", ringRow: 15, benchText: "name: north\ntitle: new\n" });
+    for (let i = 10; i < 30; i++) publish(ring, make(i));
+    recorder.take({ kind: "session", ringRow: 25, session: "dark", at: wall(START_MS + 1250) });
+    recorder.close();
+    const reader = openReader(folder);
+    expect(reader.sessions().map((s) => [s.kind, s.samples])).toEqual([
+      ["dark", 10],
+      ["lit", 15],
+      ["dark", 5],
+    ]);
+    // The record is reused, so each is read as it comes.
+    const files = Array.from(reader.inputs(1), (input) => input.benchFile);
+    expect(files).toEqual([...new Array(15).fill(1), ...new Array(15).fill(2)]);
+    reader.close();
+  });
+});
+
+describe("the latch", () => {
+  test("keeps the first cause until reset, and tells that the bench was lit", () => {
+    const { folder } = scratch;
+    const { recorder } = recording(folder);
+    recorder.take({ kind: "manifest", ringRow: 0, manifest: MANIFEST });
+    const reader = openReader(folder);
+    const latchOn = (id: number, kind: Parameters<typeof event>[1], hazard = "") => {
+      recorder.take({ kind: "event", event: event(id, kind, hazard) });
+      const latch = reader.latestLatch("north");
+      return latch === null ? null : [latch.cause, latch.lit, latch.serial];
+    };
+    expect(latchOn(1, "connected")).toBe(null);
+    expect(latchOn(2, "armed")).toEqual([-1, true, "S-1"]);
+    expect(latchOn(3, "emitting")).toEqual([-1, true, "S-1"]);
+    expect(latchOn(4, "dark")).toEqual([-1, false, "S-1"]);
+    expect(latchOn(5, "armed")).toEqual([-1, true, "S-1"]);
+    expect(latchOn(6, "trip", "case-over")).toEqual([64, false, "S-1"]);
+    expect(latchOn(7, "trip", "link-lost")).toEqual([64, false, "S-1"]);
+    expect(latchOn(8, "reset", "case-over")).toEqual([-1, false, "S-1"]);
+    reader.close();
+    recorder.close();
+  });
+});
+
+describe("what cannot be kept is counted", () => {
+  test("rows overwritten before they were read are lost by number, the others are kept", () => {
+    const { folder } = scratch;
+    const { ring, recorder } = recording(folder, 100);
+    recorder.take({ kind: "manifest", ringRow: 0, manifest: MANIFEST });
+    const make = rowMaker(3, every50ms);
+    for (let i = 0; i < 50; i++) publish(ring, make(i));
+    recorder.drain();
+    for (let i = 50; i < 350; i++) publish(ring, make(i));
+    recorder.drain();
+    // Row 250 lies in the slot that the writer fills next.
+    expect(recorder.lostRows).toBe(201);
+    recorder.close();
+    const reader = openReader(folder);
+    const kept = Array.from(reader.inputs(1), (input) => input.n);
+    expect(reader.runs()[0]?.lostSamples).toBe(201);
+    reader.close();
+    expect(kept).toEqual([
+      ...Array.from({ length: 50 }, (_, i) => i + 1),
+      ...Array.from({ length: 99 }, (_, i) => i + 252),
+    ]);
+  });
+
+  test("a damaged block is named and the rest is served", async () => {
+    const { folder } = scratch;
+    recordRows(folder, rowMaker(4, every50ms), 5000);
+    const { default: Database } = await import("better-sqlite3");
+    const db = new Database(`${folder}/record.sqlite`);
+    db.exec("UPDATE blocks SET blob = zeroblob(500) WHERE id = 2");
+    const blocks = db.prepare("SELECT count(*) FROM blocks").pluck().get();
+    db.close();
+    const reader = openReader(folder);
+    const kept = [...reader.inputs(1)].length;
+    reader.close();
+    expect(blocks).toBe(5);
+    expect(kept).toBe(3800);
+    expect([...reader.faults].join()).toMatch(/^block 2 cannot be read: its checksum is/);
+  });
+});
+
+test("the ring that tests write is the ring of the model", () => {
+  expect(new Ring(new SharedArrayBuffer(ringBytes(3))).rows).toBe(3);
+});
