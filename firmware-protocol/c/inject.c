@@ -14,6 +14,8 @@ void core_obey_inject(struct core *c, const struct core_order *o) {
     reason = WORD_CAPABILITY;
   } else if (c->state == CORE_TRIPPED) {
     reason = WORD_STATE;
+  } else if (row >= ROWS) {
+    reason = WORD_RANGE;
   } else {
     reason = core_answer_refusal(c, OFFER_INJECT, o->arg[1]);
   }

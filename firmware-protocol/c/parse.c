@@ -1,13 +1,15 @@
 /*
  * From one line to a verdict and numbers; judging a line reads and changes no controller.
  *
- * The table is the one list of verbs: name, fields by kind, and who obeys. Kinds: b u8, w u16, l u32, i i32, h h32, c code of a dark, a what is asked for, r row of an
- * injection, s open or close, d a dither (two numbers); upper case: the field may be absent.
+ * The table is the one list of verbs: name, fields by kind, and who obeys. Kinds: b u8, w u16,
+ * l u32, h h32, c code of a dark, a what is asked for, r row of an injection, s open or close,
+ * d a dither (two numbers); upper case: the field may be absent.
  */
 #include "parts.h"
 
 #define DARK_HOST_FIRST 64u
 #define DARK_HOST_LAST 254u
+#define WORD_MAX 12u
 
 struct verb {
   char name[9];
@@ -27,7 +29,7 @@ static const CORE_FLASH struct verb verbs[VERBS] = {
     {"commit", "h", core_obey_commit},
     {"readback", "b", core_obey_readback},
     {"inject", "rh", core_obey_inject},
-    {"cool", "hi", core_obey_absent},
+    {"cool", "hw", core_obey_absent},
     {"shutter", "sH", core_obey_absent},
     {"status", "", core_obey_status},
 };
@@ -76,14 +78,6 @@ static uint8_t decimal(struct span s, uint32_t max, uint32_t *out) {
   return (uint8_t)(value <= max);
 }
 
-static uint8_t signed_decimal(struct span s, uint32_t *out) {
-  if (s.length == 0u || s.bytes[0] != (uint8_t)'-') return decimal(s, 0x7FFFFFFFul, out);
-  struct span rest = {s.bytes + 1, (uint8_t)(s.length - 1u)};
-  if (!decimal(rest, 0x80000000ul, out) || *out == 0u) return 0;
-  *out = 0u - *out;
-  return 1;
-}
-
 static uint8_t hex_digit(uint8_t byte, uint8_t *out) {
   if (byte >= (uint8_t)'0' && byte <= (uint8_t)'9') {
     *out = (uint8_t)(byte - (uint8_t)'0');
@@ -111,14 +105,23 @@ static uint8_t dark_code(struct span s, uint32_t *out) {
   return (uint8_t)(decimal(s, DARK_HOST_LAST, out) && (*out == 0u || *out >= DARK_HOST_FIRST));
 }
 
+static uint8_t word_byte(uint8_t byte, uint8_t first) {
+  if (byte >= (uint8_t)'a' && byte <= (uint8_t)'z') return 1;
+  if (first) return 0;
+  return (uint8_t)((byte >= (uint8_t)'0' && byte <= (uint8_t)'9') || byte == (uint8_t)'.' ||
+                   byte == (uint8_t)'-');
+}
+
+/* Any word is well formed; one that is no row of this core reads as ROWS. */
 static uint8_t row(struct span s, uint32_t *out) {
-  for (uint8_t i = 0; i < ROWS; i++) {
-    if (equals(s, rows[i])) {
-      *out = i;
-      return 1;
-    }
+  if (s.length == 0u || s.length > WORD_MAX) return 0;
+  for (uint8_t i = 0; i < s.length; i++) {
+    if (!word_byte(s.bytes[i], (uint8_t)(i == 0u))) return 0;
   }
-  return 0;
+  uint8_t i = 0;
+  while (i < ROWS && !equals(s, rows[i])) i = (uint8_t)(i + 1u);
+  *out = i;
+  return 1;
 }
 
 static uint8_t dither(struct span s, struct core_order *o) {
@@ -141,7 +144,6 @@ static uint8_t field(char kind, struct span s, struct core_order *o) {
     case 'b': return decimal(s, 0xFFu, out);
     case 'w': return decimal(s, 0xFFFFu, out);
     case 'l': return decimal(s, 0xFFFFFFFFul, out);
-    case 'i': return signed_decimal(s, out);
     case 'h': return hex(s, 8, out);
     case 'c': return dark_code(s, out);
     case 'r': return row(s, out);
