@@ -50,6 +50,7 @@ export const REFUSALS = [
   "watch-only",
   "not-built-in",
   "no-answer",
+  "went-dark",
 ] as const;
 export type Refusal = (typeof REFUSALS)[number];
 
@@ -82,7 +83,15 @@ export const STATES = ["offline", "standby", "armed", "emitting", "tripped"] as 
 export type StateName = (typeof STATES)[number];
 export const STATE = { offline: 0, standby: 1, armed: 2, emitting: 3, tripped: 4 } as const;
 
-export const FLAG = { capped: 1, winding: 2, unattended: 4, bypassed: 8, watchOnly: 16, delay: 32 };
+export const FLAG = {
+  capped: 1,
+  winding: 2,
+  unattended: 4,
+  bypassed: 8,
+  watchOnly: 16,
+  delay: 32,
+  unheard: 64,
+};
 
 /** Where everything stands after a step: what pages, status and the record's derived channels show. */
 export interface View {
