@@ -50,11 +50,13 @@ export function readTree(text: string): Read {
     lineCounter: counter,
     prettyErrors: false,
     uniqueKeys: true,
-    logLevel: "silent",
+    logLevel: "error",
   });
   const walk = new Walk(text);
   for (const problem of syntaxProblems(text, doc)) walk.problems.push(problem);
-  const tree = walk.problems.length > 0 ? null : walk.value(doc.contents, []);
+  const whole = walk.problems.length > 0 ? null : walk.value(doc.contents, []);
+  // The walk itself may have met an alias or a strange key: then what it made is not the file.
+  const tree = walk.problems.length > 0 ? null : whole;
   return { tree, problems: walk.problems, offsetOf: (path, part) => walk.offsetOf(path, part) };
 }
 

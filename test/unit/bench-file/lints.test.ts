@@ -1,0 +1,301 @@
+import { describe, expect, test } from "vitest";
+import { lintManifest } from "../../../daemon/bench-file/lints/manifest.ts";
+import { parseBench } from "../../../daemon/bench-file/parse.ts";
+import type { Channel, Manifest } from "../../../daemon/model/manifest.ts";
+import { BARE_DIODE, benchOf, changed, NORTH } from "./files.ts";
+
+/** One lint: a change that makes it speak, and a near one that does not. */
+interface Case {
+  readonly code: string;
+  readonly level: "error" | "warning";
+  readonly path: string;
+  readonly file: string;
+  readonly fires: readonly [from: string, to: string];
+  readonly quiet: readonly [from: string, to: string];
+}
+const lint = (
+  level: Case["level"],
+  code: string,
+  path: string,
+  from: string,
+  fires: string,
+  quiet: string,
+  file = NORTH,
+): Case => ({ code, level, path, file, fires: [from, fires], quiet: [from, quiet] });
+
+const NTC =
+  "ntc: { r25: 10 kohm, beta: 3950 K, fixed: 10 kohm, place: to-ground, full: 16384 counts }";
+const steinhart = (a: string, b: string, c: string): string =>
+  `steinhart-hart: { a: ${a}, b: ${b}, c: ${c}, fixed: 10 kohm, full: 16384 counts }`;
+const platinum = (fixed: string, full: number): string =>
+  `platinum: { r0: 100 ohm, fixed: ${fixed}, full: ${full} counts }`;
+
+const CASES: readonly Case[] = [
+  lint(
+    "error",
+    "derating-rises",
+    "derating[1].current",
+    "case: 42 °C, current: 1.54 A",
+    "case: 42 °C, current: 2.15 A",
+    "case: 42 °C, current: 2.10 A",
+  ),
+  lint(
+    "error",
+    "derating-order",
+    "derating[1].case",
+    "case: 42 °C, current: 1.54 A",
+    "case: 28 °C, current: 1.54 A",
+    "case: 29 °C, current: 1.54 A",
+  ),
+  lint(
+    "error",
+    "over-absolute",
+    "limits.current",
+    "current: 1.9 A",
+    "current: 2.3 A",
+    "current: 2.2 A",
+  ),
+  lint(
+    "error",
+    "over-absolute",
+    "derating[0].current",
+    "case: 28 °C, current: 2.10 A",
+    "case: 28 °C, current: 2.21 A",
+    "case: 28 °C, current: 2.20 A",
+  ),
+  lint(
+    "warning",
+    "no-room-for-clamp",
+    "limits.current",
+    "current: 1.9 A",
+    "current: 2.1 A",
+    "current: 2.0 A",
+  ),
+  lint(
+    "error",
+    "under-threshold",
+    "derating[0].current",
+    "current: 1.9 A",
+    "current: 400 mA",
+    "current: 1.2 A",
+  ),
+  lint(
+    "warning",
+    "under-threshold",
+    "derating[2].current",
+    "current: 0.80 A",
+    "current: 0.45 A",
+    "current: 0.55 A",
+  ),
+  lint(
+    "error",
+    "crystal-dark",
+    "crystal.threshold",
+    "threshold: 330 mW",
+    "threshold: 1.8 W",
+    "threshold: 600 mW",
+  ),
+  lint(
+    "warning",
+    "junction-first",
+    "derating[0].current",
+    "junction-max: 80 °C",
+    "junction-max: 55 °C",
+    "junction-max: 78 °C",
+  ),
+  lint(
+    "warning",
+    "hunts",
+    "derating[2].current",
+    "sink-to-room: 4.5 K/W",
+    "sink-to-room: 20 K/W",
+    "sink-to-room: 6 K/W",
+  ),
+  lint(
+    "warning",
+    "beyond-quantum",
+    "diode.slope",
+    "slope: 1.05 W/A",
+    "slope: 1.6 W/A",
+    "slope: 1.4 W/A",
+  ),
+  lint("warning", "beyond-quantum", "crystal.slope", "slope: 45 %", "slope: 80 %", "slope: 70 %"),
+  lint(
+    "warning",
+    "efficiency",
+    "diode.slope",
+    "voltage: 1.49 V",
+    "voltage: 14.9 V",
+    "voltage: 1.6 V",
+  ),
+  lint("error", "term-short", "controller.term", "rate: 50 /s", "rate: 9 /s", "rate: 20 /s"),
+  lint("warning", "term-tight", "controller.term", "term: 500 ms", "term: 250 ms", "term: 300 ms"),
+  lint(
+    "error",
+    "wire-up",
+    "controller.rate",
+    "rate: 50 /s",
+    "rate: 100 /s",
+    "rate: 60 /s",
+    BARE_DIODE,
+  ),
+  lint(
+    "error",
+    "wire-down",
+    "controller.connect.baud",
+    "baud: 115200 baud",
+    "baud: 19200 baud",
+    "baud: 100000 baud",
+    BARE_DIODE,
+  ),
+  lint(
+    "error",
+    "warn-beyond-trip",
+    "hazards.case-over.warn",
+    "warn: 42 °C",
+    "warn: 50 °C",
+    "warn: 49 °C",
+  ),
+  lint(
+    "error",
+    "warn-beyond-trip",
+    "hazards.output-low.warn",
+    "warn: 90 %",
+    "warn: 50 %",
+    "warn: 51 %",
+  ),
+  lint("error", "rate-slow", "controller.rate", "rate: 50 /s", "rate: 15 /s", "rate: 20 /s"),
+  lint(
+    "error",
+    "too-late",
+    "hazards.case-over.trip-after",
+    "trip-after: 300 ms",
+    "trip-after: 900 ms",
+    "trip-after: 500 ms",
+  ),
+  lint("warning", "row-off", "hazards.case-over.trip", "trip: 50 °C", "trip: none", "trip: 49 °C"),
+  lint(
+    "error",
+    "case-trip-high",
+    "hazards.case-over.trip",
+    "trip: 50 °C",
+    "trip: 80 °C",
+    "trip: 60 °C",
+  ),
+  lint(
+    "error",
+    "sensor-span",
+    "channels.case.platinum.fixed",
+    NTC,
+    platinum("10 kohm", 16384),
+    platinum("1 kohm", 16384),
+    BARE_DIODE,
+  ),
+  lint(
+    "warning",
+    "sensor-coarse",
+    "channels.case.platinum.fixed",
+    NTC,
+    platinum("1 kohm", 1024),
+    platinum("1 kohm", 65536),
+    BARE_DIODE,
+  ),
+  lint(
+    "warning",
+    "thermistor",
+    "channels.case.ntc.beta",
+    "beta: 3950 K",
+    "beta: 1000 K",
+    "beta: 3435 K",
+    BARE_DIODE,
+  ),
+  lint(
+    "error",
+    "thermistor",
+    "channels.case.steinhart-hart",
+    NTC,
+    steinhart("1.129e-2", "2.341e-4", "8.767e-8"),
+    steinhart("1.129e-3", "2.341e-4", "8.767e-8"),
+    BARE_DIODE,
+  ),
+  lint(
+    "warning",
+    "unseen",
+    "channels",
+    "  photodiode:\n    error: 20 mW",
+    "  spare:\n    error: 20 mW",
+    "  photodiode:\n    error: 10 mW",
+    BARE_DIODE,
+  ),
+  lint("warning", "protection", "protections.key", "key: yes", "key: no", "key: yes"),
+];
+
+describe.each(CASES.map((one) => [`${one.code} at ${one.path}`, one] as const))("%s", (_n, one) => {
+  const spoken = (change: readonly [string, string]) =>
+    parseBench(changed(one.file, change[0], change[1])).problems.filter(
+      (problem) => problem.code === one.code && problem.path === one.path,
+    );
+  test(`speaks at "${one.fires[1]}"`, () => {
+    const [problem] = spoken(one.fires);
+    expect(problem).toMatchObject({ level: one.level });
+    expect(problem?.line).toBeGreaterThan(1);
+  });
+  test(`is quiet at "${one.quiet[1]}"`, () => expect(spoken(one.quiet)).toEqual([]));
+});
+
+describe("what the board's introduction shows", () => {
+  const channel = (index: number, name: string, unit: string, count_max: number): Channel => ({
+    index,
+    name,
+    unit,
+    perCount: 0.5,
+    count_min: 0,
+    count_max,
+    group: 0,
+  });
+  const manifest: Manifest = {
+    id: "00000001",
+    protocol: 1,
+    firmware: "test-1",
+    serial: "T1",
+    boot: 1,
+    tick_us: 1000,
+    absolute_counts: 4400,
+    curveCrc: "00000000",
+    term_ticks_min: 150,
+    term_ticks_max: 10_000,
+    fall_ms: 59,
+    rate_perS: 50,
+    capabilities: ["toggle"],
+    channels: [
+      channel(0, "set", "mA", 4400),
+      channel(1, "current", "mA", 4400),
+      channel(2, "case", "adc", 16_383),
+      channel(3, "photodiode", "adc", 16_383),
+    ],
+  };
+  const north = benchOf(NORTH);
+  const codes = (changes: Partial<Manifest>): string[] =>
+    lintManifest(north, { ...manifest, ...changes }).map((finding) => finding.code);
+
+  test("a fitting board is taken without a word", () => expect(codes({})).toEqual([]));
+  test("a slower board", () => expect(codes({ rate_perS: 49 })).toEqual(["board-slow"]));
+  test("a term it does not allow", () => {
+    expect(codes({ term_ticks_max: 499 })).toEqual(["board-term"]);
+    expect(codes({ term_ticks_max: 500 })).toEqual([]);
+  });
+  test("an enable that is not toggled", () => {
+    expect(codes({ capabilities: [] })).toEqual(["board-toggle"]);
+  });
+  test("rows that see nothing without a channel", () => {
+    const blind = codes({ channels: manifest.channels.slice(0, 3) });
+    expect(new Set(blind)).toEqual(new Set(["blind"]));
+    expect(blind.length).toBeGreaterThanOrEqual(3);
+  });
+  test("a case channel that never reads as warm as the trip", () => {
+    const [set, current, , photodiode] = manifest.channels;
+    if (set === undefined || current === undefined || photodiode === undefined) expect.fail();
+    const cold = { ...channel(2, "case", "adc", 16_383), count_min: 6000 };
+    expect(codes({ channels: [set, current, cold, photodiode] })).toEqual(["sensor-span"]);
+  });
+});
