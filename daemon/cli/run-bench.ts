@@ -22,7 +22,7 @@ export interface RunOptions {
   readonly file: string | URL;
   readonly folder: string | null;
   readonly port: string;
-  /** Address other than this machine's own where the page listens too; null for none. */
+  /** Address where the page listens instead of this machine's own; null for its own. */
   readonly listen: string | null;
   readonly for_ms: number | null;
   readonly stayDark: boolean;
@@ -119,8 +119,8 @@ function freeSocket(bench: string): string {
 interface Recording {
   readonly client: RecorderClient;
   readonly opened: Awaited<RecorderClient["opened"]>;
-  /** The last words of the recorder, empty while all is well, and how far it has read. */
-  readonly state: { words: string; readRows: number };
+  /** The last words of the recorder, empty while all is well, and how far behind it was then. */
+  readonly state: { words: string; behindRows: number };
 }
 
 async function startRecorder(
@@ -129,13 +129,13 @@ async function startRecorder(
   benchText: string,
   ring: Ring,
 ): Promise<Recording> {
-  const state = { words: "", readRows: 0 };
+  const state = { words: "", behindRows: 0 };
   const client = new RecorderClient(
     { folder, bench: bench.name, benchText, judgeVersion: JUDGE_VERSION, ring: ring.memory },
     (message) => {
       if (message.kind === "state") {
         state.words = message.words;
-        state.readRows = message.readRows;
+        state.behindRows = ring.written - message.readRows;
       } else if (message.kind === "failed") {
         state.words = `${message.what} ${message.found} ${message.do}`;
       }
@@ -168,10 +168,10 @@ async function startSupervision(
       latch: recording.opened.latch,
       lastEventId: recording.opened.lastEventId,
       socketPath: socket,
-      darkHosts: options.listen === null ? ["127.0.0.1"] : ["127.0.0.1", options.listen],
+      darkHosts: darkHosts(options.listen),
       record: (message) => recording.client.post(message),
       recorder: () => ({
-        behind_ms: ((ring.written - recording.state.readRows) * 1000) / bench.controller.rate_perS,
+        behind_ms: (recording.state.behindRows * 1000) / bench.controller.rate_perS,
         words: recording.state.words,
       }),
       curve: makeCurve,
@@ -192,6 +192,12 @@ async function startSupervision(
       "End what holds it, or set XDG_RUNTIME_DIR to a folder of your own.",
     );
   }
+}
+
+/** The dark port answers wherever the page does, and always on this machine. */
+function darkHosts(listen: string | null): string[] {
+  if (listen === null) return ["127.0.0.1"];
+  return listen === "0.0.0.0" || listen === "::" ? [listen] : ["127.0.0.1", listen];
 }
 
 /** The built-in bench's person: a client of the switch like any other. */

@@ -19,10 +19,7 @@ export const runCommand = (): Command =>
     .option("--bench <file>", "the bench file")
     .option("--data <folder>", "where the record is kept")
     .option("--port <number>", "port of the page; 0 takes a free one", "7808")
-    .option(
-      "--listen <address>",
-      "address of the page beside this machine's own, for instance 0.0.0.0",
-    )
+    .option("--listen <address>", "address of the page for other machines, for instance 0.0.0.0")
     .option("--for <time>", "end by itself after this long")
     .option("--stay-dark", "the built-in bench's scripted person does not arm it")
     .addHelpText(
