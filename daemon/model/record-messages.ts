@@ -53,6 +53,7 @@ export type FromRecorder =
       readonly lostRows: number;
       /** Whether the last write failed: samples and events wait in memory, or are being lost. */
       readonly failing: boolean;
+      /** What is wrong and what to do, in sentences; empty while all is well. */
       readonly words: string;
     }
   | { readonly kind: "flushed"; readonly id: number }

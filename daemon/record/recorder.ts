@@ -274,7 +274,10 @@ export class Recorder {
 
   #takeRow(): void {
     const manifest = this.#manifest;
-    if (manifest === null) return this.#lose(1);
+    if (manifest === null) {
+      this.#lose(1);
+      return;
+    }
     const cells = this.#ring.cells;
     const at = this.#ring.offset(this.#position);
     const wall = cells[at + ROW.wall_ms] as number;
@@ -285,7 +288,8 @@ export class Recorder {
     this.#staging.push(cells, at);
     if (this.#ring.written - this.#position >= this.#ring.rows) {
       this.#staging.n--;
-      return this.#lose(1);
+      this.#lose(1);
+      return;
     }
     this.#position++;
     this.#noteGap(wall, manifest.value.rate_perS);
@@ -378,7 +382,6 @@ export class Recorder {
     const lost = this.#lostRows === 0 ? "" : ` ${this.#lostRows} samples of this run are lost.`;
     const entries = this.#lostEntries === 0 ? "" : ` ${this.#lostEntries} inputs are lost.`;
     const faults = this.store.faults.map((fault) => ` An old ${fault}.`).join("");
-    const head = this.#trouble === "" ? "It records." : this.#trouble;
-    return `${head}${lost}${entries}${faults}`;
+    return `${this.#trouble}${lost}${entries}${faults}`.trim();
   }
 }
