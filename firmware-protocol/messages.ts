@@ -186,16 +186,20 @@ const helloOfAnotherVersion = z
   .tuple([u8.refine((n) => n !== PROTOCOL_VERSION)], anything)
   .transform(([proto]) => ({ proto, firmware: null }));
 
+/** What was accepted, and the number or word that the answer repeats. */
+const acceptedAs = <const V extends string, T extends z.ZodType>(verb: V, value: T) =>
+  z.tuple([oneOf([verb]), value]).transform(([, read]) => ({ verb, value: read }));
+
 const accepted = z.union([
-  z.tuple([oneOf(["arm"]), h32]),
-  z.tuple([oneOf(["dark"]), orderedCause]),
-  z.tuple([oneOf(["reset"]), u8]),
-  z.tuple([oneOf(["stage"]), u8]),
-  z.tuple([oneOf(["point"]), u8]),
-  z.tuple([oneOf(["commit"]), h32]),
-  z.tuple([oneOf(["inject"]), word(12)]),
-  z.tuple([oneOf(["cool"]), u16]),
-  z.tuple([oneOf(["shutter"]), oneOf(MOVES)]),
+  acceptedAs("arm", h32),
+  acceptedAs("dark", orderedCause),
+  acceptedAs("reset", u8),
+  acceptedAs("stage", u8),
+  acceptedAs("point", u8),
+  acceptedAs("commit", h32),
+  acceptedAs("inject", word(12)),
+  acceptedAs("cool", u16),
+  acceptedAs("shutter", oneOf(MOVES)),
 ]);
 
 type ControllerVerb = keyof typeof toController;
@@ -261,11 +265,7 @@ const toHost = {
       .tuple([oneOf(PURPOSES), h32, u32, u32])
       .transform(([purpose, number, boot, arms]) => ({ purpose, number, boot, arms })),
   ),
-  yes: bySchema(
-    "host",
-    "VERB VALUE",
-    accepted.transform(([verb, value]) => ({ verb, value })),
-  ),
+  yes: bySchema("host", "VERB VALUE", accepted),
   no: bySchema(
     "host",
     "VERB REASON [DETAIL ...]",
