@@ -6,10 +6,10 @@ import { MEDIAN, type State } from "./state.ts";
 
 /** Takes one sample into the state: its clock first, then its readings in units. */
 
-/** A clock that is off by more than this many sample periods at once has jumped. */
-const JUMP_PERIODS = 5;
-/** And by at least this, ms: a host's own stall must not look like a jump of the board. */
-const JUMP_MS_MIN = 250;
+/** A clock that is ahead by more than this many sample periods at once has jumped. */
+const JUMP_PERIODS = 2;
+/** And by at least this, ms: below it the jitter of an adapter could be behind it. */
+const JUMP_MS_MIN = 100;
 
 /**
  * Takes the sample's number and tick.
