@@ -21,7 +21,7 @@ export interface ChannelUnits {
   readonly offset: FreeQuantity | null;
 }
 
-/** Units of a channel's conversion that do not fit its name or each other. */
+/** Units of a channel's conversion that do not fit its name or each other, and impossible values. */
 export function kindFindings(name: string, units: ChannelUnits): Finding[] {
   const { error, perCount, offset } = units;
   // Sensors with a law of their own read temperature; a linear one says its kind by its unit.
@@ -30,6 +30,7 @@ export function kindFindings(name: string, units: ChannelUnits): Finding[] {
   const step = value === "temperature" ? "difference" : value;
   return [
     ...mismatch([name, "error"], error, step),
+    ...impossible(name, units),
     ...(perCount === null ? [] : mismatch([name, "linear", "per-count"], perCount, step)),
     ...(offset === null ? [] : mismatch([name, "linear", "offset"], offset, value)),
   ];
@@ -51,4 +52,22 @@ function mismatch(path: readonly string[], found: FreeQuantity, wanted: Quantity
       do: `write it in the unit of ${KINDS[wanted].name}`,
     },
   ];
+}
+
+/** A negative error would lift the ceiling above what the sensor read; a zero scale reads nothing. */
+function impossible(name: string, { error, perCount }: ChannelUnits): Finding[] {
+  const findings: Finding[] = [];
+  const refuse = (path: readonly string[], found: string, wanted: string, advice: string): void => {
+    const at = ["channels", name, ...path];
+    findings.push({ level: "error", code: "range", path: at, found, wanted, do: advice });
+  };
+  if (error.value < 0) {
+    const wanted = "half the width of the reading's stated error, zero or more";
+    refuse(["error"], "an error below zero", wanted, "write it without the minus");
+  }
+  if (perCount?.value === 0) {
+    const wanted = "what one count stands for";
+    refuse(["linear", "per-count"], "zero a count", wanted, "write the channel's scale");
+  }
+  return findings;
 }

@@ -1,4 +1,5 @@
 import { Command } from "commander";
+import { consequences } from "../bench-file/describe.ts";
 import { parseBench } from "../bench-file/parse.ts";
 import { problemLines } from "../bench-file/report.ts";
 import { NORTH, readBenchText } from "./bench-text.ts";
@@ -17,6 +18,7 @@ export const checkCommand = (): Command =>
       if (options.json === true) printJson({ ok: parsed.ok, problems: parsed.problems });
       else {
         for (const line of problemLines(parsed.problems, file ?? "north.yaml")) print(line);
+        if (parsed.ok) for (const line of consequences(parsed.bench)) print(line);
         print(verdict(parsed.ok, parsed.problems.length));
       }
       process.exitCode = parsed.ok ? EXIT.done : EXIT.refused;

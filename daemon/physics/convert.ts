@@ -15,22 +15,8 @@ const PLATINUM_A = 3.9083e-3;
 const PLATINUM_B = -5.775e-7;
 const PLATINUM_C = -4.183e-12;
 /** Range of IEC 60751; outside it the law says nothing and the reading is not finite. */
-export const PLATINUM_DEGC_MIN = -200;
-export const PLATINUM_DEGC_MAX = 850;
-
-/** Value of a count (a mean of counts may be fractional) in the channel's unit.
- *
- * Thermistors and platinum: −Infinity or +Infinity outside what the law can say (an open or shorted
- * sensor), in the direction in which the reading ran away. Never NaN for a finite count.
- */
-export function toUnit(conversion: Conversion, count: number): number {
-  return lawToUnit(conversion.law, count);
-}
-
-/** Count, not rounded, at which the channel would read that value. The inverse of `toUnit`. */
-export function toCount(conversion: Conversion, value: number): number {
-  return lawToCount(conversion.law, value);
-}
+export const PLATINUM_degC_MIN = -200;
+export const PLATINUM_degC_MAX = 850;
 
 /** 1 where a higher count means a higher value, −1 where it means a lower one. */
 export function direction(law: Law): 1 | -1 {
@@ -39,6 +25,17 @@ export function direction(law: Law): 1 | -1 {
   return (law.divider.sensor === "to-ground") === resistanceRises ? 1 : -1;
 }
 
+/**
+ * Value of a count (a mean of counts may be fractional) in the channel's unit.
+ *
+ * Thermistors and platinum: −Infinity or +Infinity outside what the law can say (an open or shorted
+ * sensor), in the direction in which the reading ran away. Never NaN for a finite count.
+ */
+export function toUnit(conversion: Conversion, count: number): number {
+  return lawToUnit(conversion.law, count);
+}
+
+/** The same for a law that stands alone. */
 export function lawToUnit(law: Law, count: number): number {
   switch (law.kind) {
     case "linear":
@@ -54,6 +51,7 @@ export function lawToUnit(law: Law, count: number): number {
   }
 }
 
+/** Count, not rounded, at which the law gives that value: the inverse of `lawToUnit`. */
 export function lawToCount(law: Law, value: number): number {
   switch (law.kind) {
     case "linear":
@@ -134,8 +132,8 @@ export function platinum_ohm(degC: number, r0_ohm: number): number {
 
 export function platinum_degC(ohm: number, r0_ohm: number): number {
   const ratio = ohm / r0_ohm;
-  if (ratio < platinum_ohm(PLATINUM_DEGC_MIN, 1)) return Number.NEGATIVE_INFINITY;
-  if (ratio > platinum_ohm(PLATINUM_DEGC_MAX, 1)) return Number.POSITIVE_INFINITY;
+  if (ratio < platinum_ohm(PLATINUM_degC_MIN, 1)) return Number.NEGATIVE_INFINITY;
+  if (ratio > platinum_ohm(PLATINUM_degC_MAX, 1)) return Number.POSITIVE_INFINITY;
   const square = PLATINUM_A * PLATINUM_A - 4 * PLATINUM_B * (1 - ratio);
   let degC = (Math.sqrt(square) - PLATINUM_A) / (2 * PLATINUM_B);
   if (ratio >= 1) return degC;

@@ -123,6 +123,12 @@ describe("an error stands at its place", () => {
     const text = changed(NORTH, "    ntc:", "    linear: { per-count: 0.1 K }\n    ntc:");
     expect(problemOf(text, "law")).toMatchObject({ path: "channels.case", found: "2 laws" });
   });
+  test("an error below zero, which would lift the ceiling, and a scale of zero", () => {
+    const text = changed(NORTH, "error: 0.5 K", "error: -0.5 K");
+    expect(problemOf(text, "range")).toMatchObject({ path: "channels.case.error" });
+    const other = changed(NORTH, "per-count: 0.05 mW", "per-count: 0 mW");
+    expect(problemOf(other, "range")?.path).toBe("channels.photodiode.linear.per-count");
+  });
   test("a channel in a unit that does not fit", () => {
     const text = changed(NORTH, "error: 0.5 K", "error: 5 mW");
     expect(problemOf(text, "unit")).toMatchObject({ path: "channels.case.error" });
