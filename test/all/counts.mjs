@@ -12,7 +12,7 @@ export function add(to, counts) {
 export const closingLine = ({ passed, failed, skipped }) =>
   `${passed} passed, ${failed} failed, ${skipped} skipped`;
 
-const CLOSING = /^(\d+) passed, (\d+) failed, (\d+) skipped$/;
+const CLOSING = /^(\d+) passed, (\d+) failed(?:, (\d+) skipped)?$/;
 
 /**
  * What a finished program counts for. One that closes with a line of counts counts for that; any
@@ -24,7 +24,7 @@ export function countsOf(output, exitCode) {
   if (match === null) {
     return exitCode === 0 ? { passed: 1, failed: 0, skipped: 0 } : { ...noCounts(), failed: 1 };
   }
-  const [passed, failed, skipped] = match.slice(1).map(Number);
+  const [passed, failed, skipped] = match.slice(1).map((n) => Number(n ?? 0));
   return { passed, failed: failed === 0 && exitCode !== 0 ? 1 : failed, skipped };
 }
 

@@ -33,10 +33,18 @@ export const forbiddenSymbols = (names: readonly string[]): string[] =>
       !(name === "memcpy" || name === "memset" || INTEGER_HELPER.test(name)),
   );
 
-/** Who calls whom in these C files, by name; calls through pointers are not among them. */
-export function callsIn(files: readonly string[], folder: string): Map<string, Set<string>> {
+/**
+ * Who calls whom in these C files, by name. A call through a pointer names nobody, so the one that
+ * leads back into these files is given: `pointer.from` may call each of `pointer.to`.
+ */
+export function callsIn(
+  files: readonly string[],
+  folder: string,
+  pointer?: { readonly from: string; readonly to: readonly string[] },
+): Map<string, Set<string>> {
   tool("gcc", ["-std=c99", "-ffreestanding", "-O0", "-fcallgraph-info", "-c", ...files], folder);
   const calls = new Map<string, Set<string>>();
+  if (pointer !== undefined) calls.set(pointer.from, new Set(pointer.to));
   for (const name of readdirSync(folder).filter((file) => file.endsWith(".ci"))) {
     const text = readFileSync(`${folder}/${name}`, "utf8");
     for (const [, from = "", to = ""] of text.matchAll(

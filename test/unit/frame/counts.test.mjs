@@ -10,6 +10,10 @@ describe("what a program of the suite counts for", () => {
     });
   });
 
+  test("its closing line, when it knows of no skipping", () => {
+    expect(countsOf("2 passed, 1 failed\n", 1)).toEqual({ passed: 2, failed: 1, skipped: 0 });
+  });
+
   test("one check, when it has none", () => {
     expect(countsOf("all well\n", 0)).toEqual({ passed: 1, failed: 0, skipped: 0 });
     expect(countsOf("bad\n", 2)).toEqual({ passed: 0, failed: 1, skipped: 0 });
