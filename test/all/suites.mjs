@@ -61,7 +61,10 @@ export const SUITES = [
     name: "hardware",
     covers: "the firmware on a simulated processor",
     needs: [...COMPILERS, ...AVR],
-    steps: () => [vitest("hardware tests", "process", "test/hardware")],
+    steps: () => [
+      ...make("the simulated board", "test/hardware/simavr"),
+      vitest("hardware tests", "process", "test/hardware"),
+    ],
   },
   {
     name: "browser",
