@@ -10,7 +10,7 @@ import {
 import { join } from "node:path";
 import Database from "better-sqlite3";
 import { errorCode, problemOf, RecordProblem } from "./problem.ts";
-import { checkVersion, migrate } from "./schema.ts";
+import { checkIfUsed, checkVersion, migrate } from "./schema.ts";
 
 /** The one file of a data folder that holds everything recorded. */
 export const recordFile = (folder: string): string => join(folder, "record.sqlite");
@@ -67,13 +67,12 @@ function makeFolder(folder: string): void {
     if (errorCode(error) !== "EEXIST" && errorCode(error) !== "ENOTDIR") {
       throw problemOf(error, folder);
     }
+    throw new RecordProblem(
+      `${folder} is no folder.`,
+      "A data folder is wanted; a file has that name, or one above it.",
+      "Name a folder with --data; it is made where it is missing.",
+    );
   }
-  if (statSync(folder, { throwIfNoEntry: false })?.isDirectory() === true) return;
-  throw new RecordProblem(
-    `${folder} is no folder.`,
-    "A data folder is wanted; something else has that name.",
-    "Name a folder with --data; it is made where it is missing.",
-  );
 }
 
 /** Opens the record for writing, making or migrating it. The caller holds the folder's lock. */
@@ -85,11 +84,13 @@ export function openForWriting(
   let db: Database.Database | null = null;
   try {
     db = new Database(recordFile(folder), { timeout: 2000 });
+    // Before anything is changed: the file may be somebody else's.
+    checkIfUsed(db, recordFile(folder));
     db.pragma(`page_size = ${PAGE_BYTES}`);
     db.pragma("journal_mode = WAL");
     // FULL also syncs the log at each commit: what was committed outlives a power cut.
     db.pragma(`synchronous = ${durability === "power-cut" ? "FULL" : "OFF"}`);
-    migrate(db, recordFile(folder));
+    migrate(db);
     return db;
   } catch (error) {
     db?.close();
@@ -97,10 +98,25 @@ export function openForWriting(
   }
 }
 
+/**
+ * Closes a record that was open for writing. Where nobody reads it at this moment it becomes one
+ * plain file, which can be copied alone and read from a read-only disk.
+ */
+export function closeWritten(db: Database.Database): void {
+  try {
+    db.pragma("journal_mode = DELETE");
+  } catch (error) {
+    // A reader has it open: the log stays beside it, and nothing is lost.
+    if (!errorCode(error).startsWith("SQLITE_BUSY")) throw error;
+  } finally {
+    db.close();
+  }
+}
+
 /** Opens the record for reading only; never makes or changes anything. */
 export function openForReading(folder: string): Database.Database {
   const file = recordFile(folder);
-  if (statSync(file, { throwIfNoEntry: false })?.isFile() !== true) {
+  if (statSync(file, { throwIfNoEntry: false }) === undefined) {
     throw new RecordProblem(
       `${folder} is no data folder.`,
       "There is no record.sqlite in it.",

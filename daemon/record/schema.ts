@@ -108,10 +108,14 @@ export function checkVersion(db: Database.Database, file: string): void {
   }
 }
 
+/** `checkVersion`, for a file that may also be new and empty. */
+export function checkIfUsed(db: Database.Database, file: string): void {
+  const tables = db.prepare("SELECT count(*) FROM sqlite_schema").pluck().get();
+  if (tables !== 0) checkVersion(db, file);
+}
+
 /** Brings a file up to this program's version, each step whole or not at all. */
-export function migrate(db: Database.Database, file: string): void {
-  const empty = db.prepare("SELECT count(*) AS n FROM sqlite_schema").get() as { n: number };
-  if (empty.n > 0) checkVersion(db, file);
+export function migrate(db: Database.Database): void {
   for (let version = pragma(db, "user_version"); version < SCHEMA_VERSION; version++) {
     const step = MIGRATIONS[version] ?? "";
     db.transaction(() => {

@@ -4,9 +4,9 @@ import type { BenchEvent } from "../model/event.ts";
 import type { Manifest } from "../model/manifest.ts";
 import type { JournalEntry, SessionKind, StoredLatch } from "../model/record-messages.ts";
 import { CODEC, type Coded } from "./blocks.ts";
-import { type FolderLock, lockFolder, openForWriting } from "./folder.ts";
+import { closeWritten, type FolderLock, lockFolder, openForWriting } from "./folder.ts";
 import { type LatchRow, latchFrom } from "./latch.ts";
-import { errorCode } from "./problem.ts";
+import { errorCode, problemOf } from "./problem.ts";
 import { repairTail } from "./repair.ts";
 import type { BlockIdentity } from "./staging.ts";
 
@@ -142,12 +142,14 @@ export class Store {
    */
   static open(folder: string, options: StoreOptions = {}): Store {
     const lock = lockFolder(folder);
+    let db: Database.Database | null = null;
     try {
-      const db = openForWriting(folder, options.durability ?? "power-cut");
+      db = openForWriting(folder, options.durability ?? "power-cut");
       return new Store(folder, lock, db);
     } catch (error) {
+      db?.close();
       lock.release();
-      throw error;
+      throw problemOf(error, folder);
     }
   }
 
@@ -199,8 +201,11 @@ export class Store {
 
   /** Closes the file and gives the folder free. */
   close(): void {
-    this.#db.close();
-    this.#lock.release();
+    try {
+      closeWritten(this.#db);
+    } finally {
+      this.#lock.release();
+    }
   }
 
   #max(table: "runs" | "sessions" | "blocks" | "events"): number {

@@ -2,7 +2,8 @@ import { afterAll, beforeAll, describe, expect, test } from "vitest";
 import { ROW } from "../../../daemon/model/ring.ts";
 import { type CsvQuery, exportCsv } from "../../../daemon/record/export.ts";
 import { openReader, type RecordReader } from "../../../daemon/record/reader.ts";
-import { recordRows, rowMaker, START_MS, scratchFolder } from "./synthetic.ts";
+import { rowMaker, START_MS } from "./row-maker.ts";
+import { recordRows, scratchFolder } from "./synthetic.ts";
 
 const scratch = scratchFolder();
 let reader: RecordReader;

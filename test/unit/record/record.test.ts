@@ -2,16 +2,8 @@ import { afterEach, describe, expect, test } from "vitest";
 import { Ring, ROW, ringBytes } from "../../../daemon/model/ring.ts";
 import { wall } from "../../../daemon/model/times.ts";
 import { openReader } from "../../../daemon/record/reader.ts";
-import {
-  event,
-  MANIFEST,
-  publish,
-  recording,
-  recordRows,
-  rowMaker,
-  START_MS,
-  scratchFolder,
-} from "./synthetic.ts";
+import { MANIFEST, publish, rowMaker, START_MS } from "./row-maker.ts";
+import { event, recording, recordRows, scratchFolder } from "./synthetic.ts";
 
 let scratch = scratchFolder();
 afterEach(() => {

@@ -6,7 +6,8 @@ import { wall } from "../../../daemon/model/times.ts";
 import { type Converter, openReader, type RecordReader } from "../../../daemon/record/reader.ts";
 import { gapAfter_ms } from "../../../daemon/record/recorder.ts";
 import { mergeStats, noStats } from "../../../daemon/record/rollup.ts";
-import { MANIFEST, recordRows, rowMaker, START_MS, scratchFolder, seeded } from "./synthetic.ts";
+import { MANIFEST, rowMaker, START_MS, seeded } from "./row-maker.ts";
+import { recordRows, scratchFolder } from "./synthetic.ts";
 
 const seed = 7_041;
 const COUNT = 9000;
