@@ -76,7 +76,8 @@ describe("a fresh clone", () => {
   });
 
   test("starts, emits light on the built-in bench, and goes dark when it is stopped", async () => {
-    daemon = spawn("npm", ["start"], {
+    // A free port, since somebody's own daemon may have the usual one.
+    daemon = spawn("npm", ["start", "--", "--port", "0"], {
       cwd: clone,
       env: environment(),
       stdio: ["ignore", "pipe", "inherit"],
