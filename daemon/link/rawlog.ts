@@ -87,6 +87,14 @@ export class RawLog {
     return this.all.list();
   }
 
+  /** The same in words: seconds of the monotonic clock, direction, line, and how it is broken. */
+  words(): string[] {
+    return this.lines().map(({ at, way, line, broken }) => {
+      const seconds = (at / 1000).toFixed(3).padStart(10);
+      return `${seconds} ${way.padEnd(3)} ${line}${broken === "" ? "" : `   (broken: ${broken})`}`;
+    });
+  }
+
   /** At most `BAD_LINES_KEPT` bad lines, oldest first, and how many older ones are gone. */
   badLines(): { readonly lines: RawLine[]; readonly dropped: number } {
     return { lines: this.bad.list(), dropped: this.bad.dropped };

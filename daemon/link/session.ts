@@ -210,6 +210,11 @@ export class LinkSession {
     return this.exchanges.boardCounts;
   }
 
+  /** The last lines of both directions, oldest first, in words. */
+  rawLines(): string[] {
+    return this.log.words();
+  }
+
   private forgetBoard(): void {
     this.hasSample = false;
     this.manifest = null;
