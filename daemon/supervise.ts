@@ -34,6 +34,8 @@ export interface SuperviseOptions {
   differences(from: Bench, to: Bench): readonly string[];
   /** A fresh address that signs a page in, or null where no desk is up. */
   sign(): string | null;
+  /** A changed bench file is in use. */
+  adopted(bench: Bench): void;
   /** A program asked the daemon to end. */
   stop(): void;
 }
@@ -178,7 +180,7 @@ export class Supervision {
         say({ ok: true, reason: "", words: "", snapshot: this.snapshot() });
         break;
       case "rawlog":
-        say({ ok: true, reason: "", words: "", lines: this.loop.session.rawLines() });
+        say({ ok: true, reason: "", words: "", lines: this.loop.session.log.words() });
         break;
       case "adopt":
         say(this.#adopt(request.benchText, request.confirm));
@@ -224,6 +226,7 @@ export class Supervision {
       return { ok: false, reason: "not-standby", words, lines: differences };
     }
     this.loop.adopt(bench, text, now());
+    this.#options.adopted(bench);
     this.loop.telling.say("adopted", "", `Adopted: ${differences.join("; ")}`, "calm", null, 0, 0);
     return { ok: true, reason: "", words: "Adopted.", lines: differences };
   }

@@ -18,7 +18,7 @@ const NICE = 10;
  * decides never waits for it.
  */
 export class DeskProcess {
-  readonly #config: DeskConfig;
+  #config: DeskConfig;
   readonly #onWords: (words: string) => void;
   #child: ChildProcess | null = null;
   #port: number;
@@ -61,6 +61,12 @@ export class DeskProcess {
   address(): string {
     const host = this.#config.host.includes(":") ? `[${this.#config.host}]` : this.#config.host;
     return `http://${host}:${this.#port}/`;
+  }
+
+  /** Counts are read by these conversions from now on, also by a desk started later. */
+  adopt(conversions: DeskConfig["conversions"]): void {
+    this.#config = { ...this.#config, conversions };
+    if (this.#child?.connected === true) this.#child.send({ kind: "conversions", conversions });
   }
 
   close(): void {

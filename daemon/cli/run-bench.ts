@@ -66,6 +66,7 @@ export async function runBench(options: RunOptions): Promise<void> {
         darkPort: supervision.darkPort,
         tokenFile: join(folder, "token"),
         names: [],
+        conversions: bench.conversions,
       },
       (words) => supervision.loop.telling.say("desk", "", words, "warn", null, 0, 0),
     );
@@ -183,6 +184,7 @@ async function startSupervision(
       },
       differences,
       sign: () => desk.process?.sign() ?? null,
+      adopted: (adopted) => desk.process?.adopt(adopted.conversions),
       stop: () => end.now(BY_PERSON),
     });
   } catch (error) {

@@ -1,0 +1,106 @@
+import { createWriteStream } from "node:fs";
+import { Readable } from "node:stream";
+import { pipeline } from "node:stream/promises";
+import { Command } from "commander";
+import { parseBench } from "../bench-file/parse.ts";
+import type { Channel } from "../model/manifest.ts";
+import { toUnit } from "../physics/convert.ts";
+import { exportCsv } from "../record/export.ts";
+import { RecordProblem } from "../record/problem.ts";
+import { openReader, type RecordReader } from "../record/reader.ts";
+import { EXIT, printJson, reasonOf, Trouble } from "./say.ts";
+import { dataFolder } from "./where.ts";
+
+interface Options {
+  readonly on: string;
+  readonly data?: string;
+  readonly session?: string;
+  readonly from?: string;
+  readonly to?: string;
+  readonly channels?: string;
+  readonly unitsLine?: boolean;
+  readonly json?: boolean;
+}
+
+/** `export FILE`: the record as CSV, at full rate; or the list of sessions as JSON. */
+export const exportCommand = (): Command =>
+  new Command("export")
+    .description("write the record as CSV, at full rate, also while the daemon runs")
+    .argument("[file]", "where to write; - or nothing is standard output")
+    .option("--on <name>", "which bench's record", "north")
+    .option("--data <folder>", "the data folder, where it is not the usual one")
+    .option("--session <number>", "only this session; --json lists their numbers")
+    .option("--from <time>", "from this moment, 2026-12-01T22:00Z")
+    .option("--to <time>", "up to this moment")
+    .option("--channels <names>", "names with commas between, current,case,judge.ceiling")
+    .option("--units-line", "units on a second header line instead of in brackets")
+    .option("--json", "the sessions as one JSON array, instead of samples")
+    .addHelpText("after", "\nExample:\n  beamsitter export night.csv --session 4")
+    .action((file: string | undefined, options: Options) => exportRecord(file ?? "-", options));
+
+async function exportRecord(file: string, options: Options): Promise<void> {
+  const reader = openOrSay(options.data ?? dataFolder(options.on));
+  try {
+    if (options.json === true) {
+      printJson(reader.sessions());
+      return;
+    }
+    const lines = exportCsv(reader, {
+      units: options.unitsLine === true ? "second-line" : "brackets",
+      ...(options.session === undefined ? {} : { session: sessionOf(options.session, reader) }),
+      ...(options.from === undefined ? {} : { from: momentOf(options.from) }),
+      ...(options.to === undefined ? {} : { to: momentOf(options.to) }),
+      ...(options.channels === undefined ? {} : { channels: options.channels.split(",") }),
+    });
+    const to = file === "-" ? process.stdout : createWriteStream(file);
+    await pipeline(Readable.from(lines), to, { end: file !== "-" });
+    for (const fault of reader.faults) process.stderr.write(`Left out: ${fault}\n`);
+  } catch (error) {
+    if (error instanceof Trouble) throw error;
+    throw new Trouble(`The export stopped: ${reasonOf(error)}.`, "Nothing of the record changed.");
+  } finally {
+    reader.close();
+  }
+}
+
+/** The reader, with the conversions of the bench file that was in use last. */
+function openOrSay(folder: string): RecordReader {
+  try {
+    const plain = openReader(folder);
+    const last = plain.sessions().at(-1);
+    const parsed = last === undefined ? null : parseBench(plain.benchText(last.benchFile));
+    if (parsed === null || !parsed.ok) return plain;
+    plain.close();
+    const { conversions } = parsed.bench;
+    return openReader(folder, (channel: Channel, counts: number) => {
+      const conversion = conversions[channel.name];
+      return conversion === undefined ? counts * channel.perCount : toUnit(conversion, counts);
+    });
+  } catch (error) {
+    if (error instanceof RecordProblem) {
+      throw new Trouble(`${error.what} ${error.found}`, error.remedy);
+    }
+    throw error;
+  }
+}
+
+function sessionOf(text: string, reader: RecordReader): number {
+  const session = reader.sessions().find((s) => String(s.id) === text);
+  if (session !== undefined) return session.id;
+  const ids = reader.sessions().map((s) => s.id);
+  throw new Trouble(
+    `There is no session ${text}.`,
+    ids.length === 0 ? "The record is empty." : `There are ${ids.slice(-10).join(", ")}.`,
+    EXIT.usage,
+  );
+}
+
+function momentOf(text: string): number {
+  const at = Date.parse(text);
+  if (!Number.isNaN(at)) return at;
+  throw new Trouble(
+    `${text} is no moment.`,
+    "Write it like 2026-12-01T22:00Z, or 2026-12-01T22:00 for local time.",
+    EXIT.usage,
+  );
+}

@@ -1,0 +1,22 @@
+import { Command } from "commander";
+import { listPorts } from "../link/transports/ports.ts";
+import { print, printJson } from "./say.ts";
+
+/** `ports`: serial ports, and what stands in the way of using each. Opens none of them. */
+export const portsCommand = (): Command =>
+  new Command("ports")
+    .description("list serial ports and what stands in the way of using each; opens none")
+    .option("--json", "one JSON array")
+    .addHelpText("after", "\nExample:\n  beamsitter ports")
+    .action(async (options: { json?: boolean }) => {
+      const ports = await listPorts();
+      if (options.json === true) printJson(ports);
+      else if (ports.length === 0) {
+        print("No serial port is to be seen. Plug the board in; a path can be given all the same.");
+      } else {
+        for (const port of ports) {
+          const what = port.description === "" ? "" : `, ${port.description}`;
+          print(`${port.path}${what}: ${port.problem === "" ? "usable" : port.problem}`);
+        }
+      }
+    });
