@@ -80,7 +80,7 @@ void core_put_i32(struct core *c, int32_t value) {
 static void put_hex(struct core *c, uint16_t value) {
   for (uint8_t shift = 16; shift > 0u;) {
     shift = (uint8_t)(shift - 4u);
-    core_put_char(c, hex_letter((uint8_t)((value >> shift) & 15u)));
+    core_put_char(c, hex_letter((uint8_t)((value >> shift) & 15)));
   }
 }
 
