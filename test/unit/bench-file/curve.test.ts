@@ -158,6 +158,26 @@ describe("the table", () => {
   });
 });
 
+describe("the board's ceiling, by hand", () => {
+  test("is taken at the upper edge of the reading: 0.5 K under a point it is that point's", () => {
+    expect(boardCeiling_mA(north, 41.5)).toBeCloseTo(1540, 9);
+    expect(boardCeiling_mA(north, 49.6)).toBe(0);
+    expect(boardCeiling_mA({ ...north, conversions: {} }, 41.5)).toBeCloseTo(1560, 9);
+  });
+  test("is never above bench limit, absolute maximum or junction limit", () => {
+    expect(boardCeiling_mA(north, 20)).toBe(1900);
+    const diode = { ...north.diode, absolute_mA: 1700 };
+    expect(boardCeiling_mA({ ...north, diode }, 20)).toBe(1700);
+    // 52.5 °C of junction on a case of 20.5 °C: 32 K / 8 K/W is 4 W, which is 1490 mV·I + 0.2 ohm·I².
+    const warm = { ...north.diode, junction_degC_max: 52.5 };
+    const root_mA = (-1490 + Math.sqrt(1490 ** 2 + 4 * 0.2 * 4e6)) / 0.4;
+    const limits = { ...north.limits, current_mA: 5000 };
+    const derating = [{ case_degC: 50, current_mA: 5000 }];
+    const free = { ...north, limits, derating, diode: { ...warm, absolute_mA: 5000 } };
+    expect(boardCeiling_mA(free, 20)).toBeCloseTo(root_mA, 6);
+  });
+});
+
 describe("refused in words", () => {
   const problems = (bench: Bench, manifest: Manifest): string => {
     const made = makeCurve(bench, manifest);

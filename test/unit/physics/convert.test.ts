@@ -58,6 +58,9 @@ describe("sensors at their ends", () => {
     expect(lawToUnit(ntc, 16_384)).toBe(Number.NEGATIVE_INFINITY);
     expect(lawToUnit({ ...ntc, divider: toSupply }, 16_384)).toBe(Number.POSITIVE_INFINITY);
   });
+  test("a law with nonsense constants reads too hot rather than below absolute zero", () => {
+    expect(lawToUnit({ ...ntc, beta_K: 1000 }, 1)).toBe(Number.POSITIVE_INFINITY);
+  });
   test("the sensor's share of the divider does not depend on which way round it is", () => {
     expect(sensorShare(toGround, 12_288)).toBe(0.75);
     expect(sensorShare(toSupply, 4096)).toBe(0.75);
