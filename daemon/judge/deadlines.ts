@@ -52,6 +52,7 @@ export function nextDeadline(plan: Plan | null, state: State): number {
   const since = waitedSince_ms(state);
   const warn_ms = plan.warn[GAP] as number;
   if (state.gapWarned === 0 && !Number.isNaN(warn_ms)) next = Math.min(next, since + warn_ms);
-  if (isLit(state)) next = Math.min(next, since + (plan.trip[GAP] as number));
+  const trip_ms = plan.trip[GAP] as number;
+  if (isLit(state) && !Number.isNaN(trip_ms)) next = Math.min(next, since + trip_ms);
   return next;
 }

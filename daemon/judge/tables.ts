@@ -17,8 +17,8 @@ const ENTRIES_MAX = 65_536;
 const GRID_DEGC_MIN = -40;
 const GRID_DEGC_MAX = 150;
 const FLOOR_STEP_K = 0.1;
-export const OUTPUT_STEP_K = 1;
-const OUTPUT_CURRENTS = 64;
+const OUTPUT_STEP_K = 0.5;
+const OUTPUT_CURRENTS = 128;
 
 /** The host stays this much below the table that the board holds, so that it acts first. */
 export const BELOW_BOARD_SHARE = 0.01;
@@ -175,7 +175,7 @@ function fromFloorGrid(grid: Float64Array, case_degC: number): number {
   return below + (above - below) * (place - i);
 }
 
-/** Works out what a healthy bench gives at every whole kelvin and 64 currents up to its limit. */
+/** Works out what a healthy bench gives at every half kelvin and 128 currents up to its limit. */
 export function outputTable(bench: Bench): OutputTable {
   const rows = (GRID_DEGC_MAX - GRID_DEGC_MIN) / OUTPUT_STEP_K + 1;
   const columns = OUTPUT_CURRENTS + 1;

@@ -130,3 +130,13 @@ export const withRow = (id: HazardId, levels: Partial<HazardLevels>): Bench => (
   ...BENCH,
   hazards: { ...BENCH.hazards, [id]: { ...BENCH.hazards[id], ...levels } },
 });
+
+/** The bench with every other row silent, so that a test sees this row alone. */
+export function onlyRow(id: HazardId, levels: Partial<HazardLevels> = {}): Bench {
+  const silent = HAZARD_IDS.map((other) => {
+    const row = BENCH.hazards[other];
+    if (other === id) return [other, { ...row, ...levels }];
+    return [other, other === "sample-gap" ? row : { ...row, warn: null, trip: null }];
+  });
+  return { ...BENCH, hazards: Object.fromEntries(silent) as Record<HazardId, HazardLevels> };
+}
