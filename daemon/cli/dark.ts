@@ -3,7 +3,7 @@ import { SwitchClient } from "../control/client.ts";
 import { EXIT, print, printJson, reasonOf } from "./say.ts";
 import { isAlive, type Notice, notices } from "./where.ts";
 
-/** How long the switch and the dark port may take before the daemon itself is ended, ms. */
+/** How long switch and dark port may take before the daemon itself is ended, ms. */
 const WAY_MS_MAX = 700;
 
 type Told = {
@@ -14,7 +14,7 @@ type Told = {
 };
 
 /**
- * `dark`: three ways, each simpler than the one before. Without `--on` every running bench goes dark:
+ * `dark`: three ways, each simpler than the one before; the first two at once. Without `--on` every running bench goes dark:
  * at that moment nobody wants to be asked which.
  */
 export const darkCommand = (): Command =>
@@ -38,12 +38,13 @@ export const darkCommand = (): Command =>
     });
 
 async function darken(notice: Notice): Promise<Told> {
-  const bench = notice.bench;
-  const bySwitch = await within(askSwitch(notice));
-  if (bySwitch !== null) return { bench, ok: true, way: "switch", words: bySwitch };
-  const byPort = await within(askPort(notice));
-  if (byPort !== null) return { bench, ok: true, way: "dark port", words: byPort };
-  return endDaemon(notice);
+  const { bench } = notice;
+  // Both at once: a dark too many does no harm, and nobody waits for the way that is stuck.
+  const ways = [
+    askSwitch(notice).then((words) => ({ bench, ok: true, way: "switch" as const, words })),
+    askPort(notice).then((words) => ({ bench, ok: true, way: "dark port" as const, words })),
+  ];
+  return (await within(Promise.any(ways))) ?? endDaemon(notice);
 }
 
 async function askSwitch(notice: Notice): Promise<string> {
@@ -59,15 +60,15 @@ async function askPort(notice: Notice): Promise<string> {
   return typeof body.words === "string" ? body.words : "Dark was heard.";
 }
 
-/** The words of a way that answered in time, or null: then the next way is taken. */
-async function within(way: Promise<string>): Promise<string | null> {
+/** What the quicker way said, or null where neither answered in time: then the daemon is ended. */
+async function within(way: Promise<Told>): Promise<Told | null> {
   let timer: NodeJS.Timeout | undefined;
   const late = new Promise<null>((resolve) => {
     timer = setTimeout(() => resolve(null), WAY_MS_MAX);
   });
-  const result = await Promise.race([way.catch(() => null), late]);
+  const told = await Promise.race([way.catch(() => null), late]);
   clearTimeout(timer);
-  return result;
+  return told;
 }
 
 function endDaemon(notice: Notice): Told {

@@ -1,4 +1,4 @@
-import { mono, type Mono_ms, wall, type Wall_ms } from "../model/times.ts";
+import { type Mono_ms, mono, type Wall_ms, wall } from "../model/times.ts";
 import type { Loop, Received } from "./loop.ts";
 
 /** A simulated board on a simulated clock: bytes in, bytes out, time by order. */

@@ -4,6 +4,7 @@ import { nextSentence, type SentenceNames, stateSentence } from "../judge/words.
 import type { Bench } from "../model/bench.ts";
 import { causeOf } from "../model/cause.ts";
 import { MAKER_WORDS, makerOf } from "../model/ceiling.ts";
+import { formatQuantity } from "../model/quantities.ts";
 import type { Loop } from "./loop.ts";
 
 /** What the snapshot tells of things beside the loop. */
@@ -15,10 +16,12 @@ export interface Beside {
 
 /** The caution that stands wherever light can be switched on. */
 export function safetyText(bench: Bench): string {
+  // A pump is tuned to the crystal's line by its temperature; cold, it is some nanometres short.
+  const whole = (nm: number): string => formatQuantity("length", Math.floor(nm), 1);
   const light =
     bench.crystal === null
-      ? `${bench.diode.wavelength_nm} nm`
-      : `${bench.diode.wavelength_nm} nm and ${bench.crystal.wavelength_nm} nm`;
+      ? whole(bench.diode.wavelength_nm)
+      : `${whole(bench.crystal.line_nm)} and ${whole(bench.crystal.wavelength_nm)}`;
   return `Not a certified safety function. Eyewear for ${light}, the enclosure, the key and the hardware interlock come first; local rules and your laser safety officer decide.`;
 }
 
