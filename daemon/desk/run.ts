@@ -1,0 +1,61 @@
+import type { AddressInfo } from "node:net";
+import { setPriority } from "node:os";
+import { SwitchClient } from "../control/client.ts";
+import { pagesRoot } from "../paths.ts";
+import { toUnit } from "../physics/convert.ts";
+import { openReader } from "../record/reader.ts";
+import { BEAT_MS, DeskConfig, type FromDesk, ToDesk } from "./config.ts";
+import { Live } from "./live.ts";
+import { buildServer } from "./server.ts";
+import { readToken, SignIn } from "./sign-in.ts";
+import { SwitchLine } from "./switch-line.ts";
+
+/** Below the judging thread, so that a busy page never delays a permit. */
+const NICE = 10;
+
+const toParent = (message: FromDesk): void => {
+  if (process.connected) process.send?.(message);
+};
+
+/** Wires and starts the desk of one data folder; resolves when it listens, rejects in words. */
+export async function runDesk(configText: string): Promise<void> {
+  const config = DeskConfig.parse(JSON.parse(configText));
+  setPriority(NICE);
+  const sign = new SignIn(readToken(config.tokenFile));
+  let conversions = config.conversions ?? {};
+  process.on("message", (message) => {
+    const order = ToDesk.safeParse(message);
+    if (!order.success) return;
+    if (order.data.kind === "code") sign.offer(order.data.code);
+    else conversions = order.data.conversions;
+  });
+  // Without its daemon a desk shows nothing and could do nothing; the next one starts afresh.
+  process.on("disconnect", () => process.exit(0));
+
+  const live = new Live();
+  const line = new SwitchLine(() => SwitchClient.connect(config.switchPath), {
+    push: (push) => live.take(push),
+    line: (connected) => live.line(connected),
+  });
+  const record = openReader(config.folder, (channel, counts) => {
+    const conversion = conversions[channel.name];
+    return conversion === undefined ? counts * channel.perCount : toUnit(conversion, counts);
+  });
+  const pages = config.pages ?? pagesRoot;
+  const app = await buildServer({ config, pages, sign, line, live, record });
+  await line.open();
+  await app.listen({ host: config.host, port: config.port });
+  const { port } = app.server.address() as AddressInfo;
+  sign.nameCookieFor(port);
+  toParent({ kind: "listening", host: config.host, port });
+  setInterval(() => toParent({ kind: "beat", clients: live.pages }), BEAT_MS);
+}
+
+/** The words of a failed start, for the daemon to print. */
+export function tellFailure(error: unknown): void {
+  const words = error instanceof Error ? error.message : `${error}`;
+  toParent({ kind: "failed", words });
+  process.stderr.write(`The desk did not start: ${words}\n`);
+  process.exitCode = 1;
+  process.disconnect?.();
+}

@@ -1,0 +1,51 @@
+import type { Snapshot } from "../../daemon/desk/api.ts";
+import { age, amps, clockWithSeconds } from "./format.ts";
+
+/** The sentences over the picture, with what the page itself knows: how old they are. */
+export interface Sentences {
+  readonly state: string;
+  readonly next: string;
+  /** Part of the state sentence that is the message, where it is the page's own. */
+  readonly abnormal: string;
+}
+
+/** The daemon's own sentences, or the page's where nothing was heard of late. */
+export function sentencesOf(now: Snapshot, silence_ms: number, signedOut: boolean): Sentences {
+  if (signedOut) {
+    const abnormal = "This page is not signed in any more.";
+    return {
+      abnormal,
+      state: `${abnormal} It last heard from ${now.bench} at ${clockWithSeconds(now.at)}.`,
+      next: "Next: run beamsitter open on the bench's computer. Dark still goes the second way from here.",
+    };
+  }
+  if (silence_ms > 0) return silentSentences(now, silence_ms);
+  return { abnormal: "", state: withCorridor(now), next: now.next };
+}
+
+function silentSentences(now: Snapshot, silence_ms: number): Sentences {
+  const abnormal = `Nothing heard from ${now.bench} for ${age(silence_ms)}.`;
+  const lit = now.state === "armed" || now.state === "emitting";
+  const said = lit
+    ? amps(now.current_mA)
+    : `that it is ${now.state === "tripped" ? "dark and tripped" : "dark"}`;
+  const last = `It last said ${said}, at ${clockWithSeconds(now.at)}.`;
+  const whether = lit
+    ? ` Its permits end ${(now.link.term_ms / 1000).toFixed(1)}\u00a0s after the computer falls silent; whether it is dark is not known here.`
+    : "";
+  return {
+    abnormal,
+    state: `${abnormal} ${last}${whether}`,
+    next: "Next: this page asks again every 2\u00a0s. Dark goes by two ways at once; go and look if neither answers.",
+  };
+}
+
+/** Where the corridor stands, where the daemon's sentence does not say so by itself. */
+function withCorridor(now: Snapshot): string {
+  const { sentence } = now;
+  if (now.state !== "emitting" || /ceiling/i.test(sentence)) return sentence;
+  if (now.headroom_mA === null || now.margin_mA === null) return sentence;
+  const below =
+    now.margin_mA < 0 ? `${amps(-now.margin_mA)} above it` : `${amps(now.margin_mA)} below`;
+  return `${sentence} The ceiling is ${amps(now.headroom_mA)} above, threshold ${below}.`;
+}
