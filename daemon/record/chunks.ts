@@ -26,7 +26,7 @@ export interface ChunkFilter {
 }
 
 /** A block spans at most its minute; this much is allowed for civil time that ran differently. */
-const SPAN_MS_MAX = 120_000;
+const SPAN_ms_MAX = 120_000;
 
 const COLUMNS = `id, session, run, t0, t1, input0, n, manifest, bench_file AS benchFile`;
 
@@ -92,7 +92,7 @@ function conditions(filter: ChunkFilter): { where: string; values: Record<string
   if (filter.from !== undefined) parts.push("t0 >= @from - @span AND t1 >= @from");
   if (filter.to !== undefined) parts.push("t0 < @to");
   const where = parts.length === 0 ? "" : `WHERE ${parts.join(" AND ")}`;
-  return { where, values: { ...filter, span: SPAN_MS_MAX } };
+  return { where, values: { ...filter, span: SPAN_ms_MAX } };
 }
 
 /** Manifests by row id, read once each. */

@@ -6,7 +6,7 @@ import { wall } from "../model/times.ts";
  * What a window's last samples may lack because they are still on their way to the disk: a shorter
  * stretch without samples at its end is not called a gap.
  */
-export const LIVE_EDGE_MS = 2500;
+export const LIVE_EDGE_ms = 2500;
 
 const OF_BENCH = "run IN (SELECT id FROM runs WHERE bench = @bench)";
 
@@ -42,6 +42,6 @@ export function gapsOf(
   if (first === null || last === null) return [{ from: wall(from), to: wall(to) }];
   const found = [...read.gaps];
   if (first > from) found.unshift({ a: from, b: first });
-  if (to - last > LIVE_EDGE_MS) found.push({ a: last, b: to });
+  if (to - last > LIVE_EDGE_ms) found.push({ a: last, b: to });
   return found.map(({ a, b }) => ({ from: wall(Math.max(a, from)), to: wall(Math.min(b, to)) }));
 }

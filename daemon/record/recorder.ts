@@ -16,7 +16,7 @@ import { Staging } from "./staging.ts";
 import { Store, type StoredRows, type StoreOptions, type WriteOp } from "./store.ts";
 
 /** New samples reach the disk at this pace: with the worker's own pace, under one second. */
-export const COMMIT_MS = 500;
+export const COMMIT_ms = 500;
 /** Packed blocks that wait for a disk that refuses them; beyond, rows are left in the ring. */
 const BLOCKS_WAITING_MAX = 8;
 /** Journal entries and events that wait for such a disk; later journal entries are dropped. */
@@ -168,7 +168,7 @@ export class Recorder {
     }
     this.#skipOverwritten();
     const now = this.#now();
-    if (now - this.#committed_ms >= COMMIT_MS) this.#commit();
+    if (now - this.#committed_ms >= COMMIT_ms) this.#commit();
     if (now - this.#told_ms >= 1000) this.#tellState(now);
   }
 

@@ -8,7 +8,7 @@ import { type ChannelPlace, isFresh, placesOf } from "./columns.ts";
  * its own rows, so a second cut by a block's edge has a part in each; parts of one second merge.
  * Only values that are fresh and known count: a slow channel that stands still is not many readings.
  */
-export const SECOND_MS = 1000;
+export const SECOND_ms = 1000;
 
 /** Column ids of a rollup: the block's column, plus 256 for each kind. 65535 is the second itself. */
 export const ROLLUP = { n: 1, min: 2, sum: 3, max: 4, m2: 5 } as const;
@@ -101,12 +101,12 @@ export function rollUp(rows: RowSource, manifest: Manifest): Coded {
 /** The distinct seconds of a block in ascending order, and the slot of each row. */
 function secondsOf(wall: Float64Array, n: number): { seconds: number[]; ofRow: Uint16Array } {
   const seconds = new Set<number>();
-  for (let i = 0; i < n; i++) seconds.add(Math.floor((wall[i] as number) / SECOND_MS));
+  for (let i = 0; i < n; i++) seconds.add(Math.floor((wall[i] as number) / SECOND_ms));
   const sorted = [...seconds].sort((a, b) => a - b);
   const slotOf = new Map(sorted.map((s, slot) => [s, slot]));
   const ofRow = new Uint16Array(n);
   for (let i = 0; i < n; i++) {
-    ofRow[i] = slotOf.get(Math.floor((wall[i] as number) / SECOND_MS)) as number;
+    ofRow[i] = slotOf.get(Math.floor((wall[i] as number) / SECOND_ms)) as number;
   }
   return { seconds: sorted, ofRow };
 }

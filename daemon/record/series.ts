@@ -5,7 +5,7 @@ import { type Chunk, ChunkIndex } from "./chunks.ts";
 import { type ChannelPlace, placeOf } from "./columns.ts";
 import { gapsOf } from "./gaps.ts";
 import type { Converter, ReadParts } from "./reader.ts";
-import { countsFor, ROLLUP, rollupColumn, SECOND_COLUMN, SECOND_MS } from "./rollup.ts";
+import { countsFor, ROLLUP, rollupColumn, SECOND_COLUMN, SECOND_ms } from "./rollup.ts";
 
 /** Blocks read before other work gets its turn, and an abort is looked for. */
 const BLOCKS_A_TURN = 16;
@@ -24,8 +24,8 @@ export async function answerSeries(
   const { from, to } = query.window;
   const pixels = Math.max(1, Math.floor(query.pixels));
   const pixel_ms = Math.max(0, to - from) / pixels;
-  const rolled = pixel_ms >= SECOND_MS;
-  const step_ms = rolled ? Math.ceil(pixel_ms / SECOND_MS) * SECOND_MS : pixel_ms;
+  const rolled = pixel_ms >= SECOND_ms;
+  const step_ms = rolled ? Math.ceil(pixel_ms / SECOND_ms) * SECOND_ms : pixel_ms;
   const first = Math.floor(from / step_ms);
   const steps = step_ms > 0 ? Math.max(0, Math.ceil(to / step_ms) - first) : 0;
   const reach = { from: first * step_ms, to: (first + steps) * step_ms };
@@ -106,7 +106,7 @@ function gatherRollup(block: Block, place: ChannelPlace, convert: Converter, to:
     const b = convert(place.channel, max[i] as number);
     const mean = convert(place.channel, (sum[i] as number) / count);
     // A thermistor's counts fall as it warms: the least count is the highest temperature.
-    to.add((second[i] as number) * SECOND_MS, Math.min(a, b), mean, Math.max(a, b), count);
+    to.add((second[i] as number) * SECOND_ms, Math.min(a, b), mean, Math.max(a, b), count);
   }
 }
 

@@ -5,7 +5,7 @@ import { problemOf } from "./problem.ts";
 import { Recorder } from "./recorder.ts";
 
 /** Pace of looking at the ring. Rows are taken one look later than seen, see `pump`. */
-const LOOK_MS = 50;
+const LOOK_ms = 50;
 
 /** Runs a recorder at the other end of `port` until it is closed. */
 export function serve(port: MessagePort): void {
@@ -19,7 +19,7 @@ export function serve(port: MessagePort): void {
     try {
       recorder = new Recorder({ ...message, tell });
       ring = new Ring(message.ring);
-      timer = setInterval(pump, LOOK_MS);
+      timer = setInterval(pump, LOOK_ms);
       tell({ kind: "opened", lastEventId: recorder.lastEventId, latch: recorder.latchAtOpen });
     } catch (error) {
       const problem = problemOf(error, message.folder);

@@ -5,10 +5,10 @@ import { type ColumnSource, columnSources, storedCount } from "./columns.ts";
 
 /** A block ends at this many rows or after this time, whichever comes first. */
 export const BLOCK_ROWS = 6000;
-export const BLOCK_MS = 60_000;
+export const BLOCK_ms = 60_000;
 
 /** Civil time that runs away from monotonic time by this much was stepped: a new block begins. */
-export const CLOCK_STEP_MS = 1000;
+export const CLOCK_STEP_ms = 1000;
 
 /** What the rows of one block have in common. All are row ids of the store, except the manifest. */
 export interface BlockIdentity {
@@ -49,10 +49,10 @@ export class Staging {
     if (this.n >= BLOCK_ROWS) return false;
     const mono = cells[at + ROW.mono_ms] as number;
     const wall = cells[at + ROW.wall_ms] as number;
-    if (mono - (this.#mono[0] as number) >= BLOCK_MS) return false;
+    if (mono - (this.#mono[0] as number) >= BLOCK_ms) return false;
     const last = this.n - 1;
     const stepped = wall - (this.#wall[last] as number) - (mono - (this.#mono[last] as number));
-    return Math.abs(stepped) < CLOCK_STEP_MS;
+    return Math.abs(stepped) < CLOCK_STEP_ms;
   }
 
   /** Copies one ring row; the caller has asked `accepts`. */

@@ -74,6 +74,12 @@ export const ROOMS_TABLE: readonly Room[] = [
     pure: true,
   },
   {
+    path: "daemon/rehearsal",
+    rooms: [MODEL, PHYSICS, "daemon/judge", "daemon/bench-file"],
+    packages: [],
+    pure: true,
+  },
+  {
     path: "daemon/supervise.ts",
     rooms: [
       MODEL,

@@ -11,8 +11,8 @@ import { seeded } from "../unit/record/row-maker.ts";
 import { scratchFolder } from "../unit/record/synthetic.ts";
 
 /** What is allowed to be missing after a kill. */
-const SAMPLES_LOST_MS = 1000;
-const EVENT_DURABLE_MS = 200;
+const SAMPLES_LOST_ms = 1000;
+const EVENT_DURABLE_ms = 200;
 const KILLS = 5;
 const seed = 99;
 
@@ -74,13 +74,13 @@ describe(`killed between any two writes (seed ${seed})`, () => {
       const goal = 14 + Math.floor(random() * 12);
       await writer.until(() => writer.events.length >= goal);
       const killedAt = await writer.kill();
-      named.push(...writer.events.filter((e) => e.at <= killedAt - EVENT_DURABLE_MS));
+      named.push(...writer.events.filter((e) => e.at <= killedAt - EVENT_DURABLE_ms));
 
       const reader = openReader(folder);
       const inputs = Array.from(reader.inputs(kill), (input) => input.n);
       expect(inputs).toEqual(inputs.map((_, i) => i + 1));
       const session = reader.sessions().find((s) => s.run === kill);
-      expect(killedAt - (session?.last ?? 0)).toBeLessThanOrEqual(SAMPLES_LOST_MS);
+      expect(killedAt - (session?.last ?? 0)).toBeLessThanOrEqual(SAMPLES_LOST_ms);
       const kept = new Set(reader.events({ from: wall(0), to: wall(1e15) }).map((e) => e.id));
       expect(named.filter((e) => !kept.has(e.id))).toEqual([]);
       expect(reader.faults.size).toBe(0);

@@ -7,7 +7,7 @@ import { MANIFEST, publish, rowMaker } from "../unit/record/row-maker.ts";
  * Records into a data folder as a daemon would, until it is killed: about 100 samples a second and
  * an event with every tenth, each named on stdout once it was handed over. For tests that kill it.
  */
-const SAMPLE_MS = 10;
+const SAMPLE_ms = 10;
 const SAMPLES_AN_EVENT = 10;
 
 const [folder = ""] = process.argv.slice(2);
@@ -37,7 +37,7 @@ function record(lastEventId: number): void {
   setInterval(() => {
     publish(ring, make(samples++));
     if (samples % SAMPLES_AN_EVENT === 0) postEvent(lastEventId + samples / SAMPLES_AN_EVENT);
-  }, SAMPLE_MS);
+  }, SAMPLE_ms);
 }
 
 function postEvent(id: number): void {

@@ -2,7 +2,7 @@ import { afterAll, beforeAll, describe, expect, test } from "vitest";
 import { ROW } from "../../../daemon/model/ring.ts";
 import { type CsvQuery, exportCsv } from "../../../daemon/record/export.ts";
 import { openReader, type RecordReader } from "../../../daemon/record/reader.ts";
-import { rowMaker, START_MS } from "./row-maker.ts";
+import { rowMaker, START_ms } from "./row-maker.ts";
 import { recordRows, scratchFolder } from "./synthetic.ts";
 
 const scratch = scratchFolder();
@@ -51,7 +51,7 @@ describe("CSV", () => {
       "judge.state",
     ]);
     expect(lines).toHaveLength(3000);
-    expect(lines[0]?.slice(0, 2)).toEqual([new Date(START_MS).toISOString(), "0.0000"]);
+    expect(lines[0]?.slice(0, 2)).toEqual([new Date(START_ms).toISOString(), "0.0000"]);
     expect(lines[2999]?.[1]).toBe("149.9500");
     lines.forEach((line, i) => {
       const row = rows[i] as Float64Array;
@@ -66,13 +66,13 @@ describe("CSV", () => {
   });
 
   test("a window cuts to the millisecond; the last moment is not in it", () => {
-    const [, ...lines] = csv({ from: START_MS + 1000, to: START_MS + 2000, channels: [] });
+    const [, ...lines] = csv({ from: START_ms + 1000, to: START_ms + 2000, channels: [] });
     expect(lines).toHaveLength(20);
-    expect(lines[0]?.[0]).toBe(new Date(START_MS + 1000).toISOString());
+    expect(lines[0]?.[0]).toBe(new Date(START_ms + 1000).toISOString());
   });
 
   test("units stand on a second line on request, and all channels where none are named", () => {
-    const [names, units] = csv({ units: "second-line", to: START_MS + 1 });
+    const [names, units] = csv({ units: "second-line", to: START_ms + 1 });
     expect(names?.slice(0, 5)).toEqual(["time", "elapsed", "tick", "set", "current"]);
     expect(units?.slice(0, 5)).toEqual(["UTC", "s", "tick", "mA", "mA"]);
     expect(names).toContain("judge.ceiling");

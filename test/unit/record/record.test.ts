@@ -2,7 +2,7 @@ import { afterEach, describe, expect, test } from "vitest";
 import { Ring, ROW, ringBytes } from "../../../daemon/model/ring.ts";
 import { wall } from "../../../daemon/model/times.ts";
 import { openReader } from "../../../daemon/record/reader.ts";
-import { MANIFEST, publish, rowMaker, START_MS } from "./row-maker.ts";
+import { MANIFEST, publish, rowMaker, START_ms } from "./row-maker.ts";
 import { event, recording, recordRows, scratchFolder } from "./synthetic.ts";
 
 let scratch = scratchFolder();
@@ -17,7 +17,7 @@ describe("what goes in comes out", () => {
     const { folder } = scratch;
     const { ring, recorder } = recording(folder, 8000);
     recorder.take({ kind: "manifest", ringRow: 0, manifest: MANIFEST });
-    recorder.take({ kind: "session", ringRow: 0, session: "lit", at: wall(START_MS) });
+    recorder.take({ kind: "session", ringRow: 0, session: "lit", at: wall(START_ms) });
     const make = rowMaker(1, every50ms);
     const expected: { n: number; now_ms: number; kind: number }[] = [];
     const rows = new Map<number, Float64Array>();
@@ -78,7 +78,7 @@ describe("what goes in comes out", () => {
     second.recorder.take({ kind: "event", event: event(2, "desk") });
     second.recorder.close();
     const reader = openReader(folder);
-    const all = { from: wall(0), to: wall(START_MS * 2) };
+    const all = { from: wall(0), to: wall(START_ms * 2) };
     expect(reader.events(all)).toEqual([
       event(1, "connected"),
       event(2, "warning", "case-over"),
@@ -95,10 +95,10 @@ describe("what goes in comes out", () => {
     const make = rowMaker(2, every50ms);
     recorder.take({ kind: "manifest", ringRow: 0, manifest: MANIFEST });
     for (let i = 0; i < 10; i++) publish(ring, make(i));
-    recorder.take({ kind: "session", ringRow: 10, session: "lit", at: wall(START_MS + 500) });
+    recorder.take({ kind: "session", ringRow: 10, session: "lit", at: wall(START_ms + 500) });
     recorder.take({ kind: "bench", ringRow: 15, benchText: "name: north\ntitle: new\n" });
     for (let i = 10; i < 30; i++) publish(ring, make(i));
-    recorder.take({ kind: "session", ringRow: 25, session: "dark", at: wall(START_MS + 1250) });
+    recorder.take({ kind: "session", ringRow: 25, session: "dark", at: wall(START_ms + 1250) });
     recorder.close();
     const reader = openReader(folder);
     expect(reader.sessions().map((s) => [s.kind, s.samples])).toEqual([

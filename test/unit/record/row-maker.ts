@@ -53,7 +53,7 @@ export function seeded(seed: number): () => number {
   };
 }
 
-export const START_MS = 1_780_000_000_000;
+export const START_ms = 1_780_000_000_000;
 
 /** One row as the loop would have written it; `at_ms` is both clocks' time since the start. */
 export type RowMaker = (i: number) => Float64Array;
@@ -62,7 +62,7 @@ export type RowMaker = (i: number) => Float64Array;
 export function rowMaker(
   seed: number,
   at_ms: (i: number) => number,
-  start_ms = START_MS,
+  start_ms = START_ms,
 ): RowMaker {
   const random = seeded(seed);
   const values = new Float64Array(64);

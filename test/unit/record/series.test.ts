@@ -6,7 +6,7 @@ import { wall } from "../../../daemon/model/times.ts";
 import { type Converter, openReader, type RecordReader } from "../../../daemon/record/reader.ts";
 import { gapAfter_ms } from "../../../daemon/record/recorder.ts";
 import { mergeStats, noStats } from "../../../daemon/record/rollup.ts";
-import { MANIFEST, rowMaker, START_MS, seeded } from "./row-maker.ts";
+import { MANIFEST, rowMaker, START_ms, seeded } from "./row-maker.ts";
 import { recordRows, scratchFolder } from "./synthetic.ts";
 
 const seed = 7_041;
@@ -182,7 +182,7 @@ describe("series against every sample, one by one", () => {
     ["after everything", 900_000, 990_000, 10, 9000],
     ["over the clock that was put back", 540_000, 620_000, 2000, 0],
   ])("%s", async (_name, from, to, pixels, step_ms) => {
-    expect(await expectEqualToBrute(START_MS + from, START_MS + to, pixels)).toBe(step_ms);
+    expect(await expectEqualToBrute(START_ms + from, START_ms + to, pixels)).toBe(step_ms);
   });
 
   test(`any window at any width (seed ${seed})`, async () => {
@@ -192,7 +192,7 @@ describe("series against every sample, one by one", () => {
         fc.integer({ min: 1, max: 300_000 }),
         fc.integer({ min: 1, max: 400 }),
         async (from, length, pixels) => {
-          await expectEqualToBrute(START_MS + from, START_MS + from + length, pixels);
+          await expectEqualToBrute(START_ms + from, START_ms + from + length, pixels);
         },
       ),
       { seed, numRuns: 25 },
@@ -205,7 +205,7 @@ describe("series against every sample, one by one", () => {
       {
         bench: "north",
         channels: ["case"],
-        window: { from: wall(0), to: wall(START_MS * 2) },
+        window: { from: wall(0), to: wall(START_ms * 2) },
         pixels: 9,
       },
       stop.signal,
@@ -215,7 +215,7 @@ describe("series against every sample, one by one", () => {
   });
 
   test("another bench has nothing, and all of its window is a gap", async () => {
-    const window = { from: wall(START_MS), to: wall(START_MS + 1000) };
+    const window = { from: wall(START_ms), to: wall(START_ms + 1000) };
     const answer = await reader.series({ bench: "south", channels: ["case"], window, pixels: 10 });
     expect(answer.channels.case?.n).toHaveLength(0);
     expect(answer.gaps).toEqual([window]);

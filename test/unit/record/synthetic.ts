@@ -6,7 +6,7 @@ import type { BenchEvent } from "../../../daemon/model/event.ts";
 import { Ring, ringBytes } from "../../../daemon/model/ring.ts";
 import { mono, wall } from "../../../daemon/model/times.ts";
 import { Recorder, type RecorderOptions } from "../../../daemon/record/recorder.ts";
-import { MANIFEST, publish, type RowMaker, START_MS } from "./row-maker.ts";
+import { MANIFEST, publish, type RowMaker, START_ms } from "./row-maker.ts";
 
 /** A data folder of a test's own, and its removal. */
 export function scratchFolder(): { folder: string; remove(): void } {
@@ -23,7 +23,7 @@ export const event = (id: number, kind: BenchEvent["kind"], hazard = ""): BenchE
   input: id,
   tick: 5,
   mono: mono(id),
-  wall: wall(START_MS + id),
+  wall: wall(START_ms + id),
   kind,
   hazard,
   data: { a: 0.1, words: "a word" },
@@ -50,7 +50,7 @@ export function recording(folder: string, rows = 2000, more: Partial<RecorderOpt
 export function recordRows(folder: string, maker: RowMaker, count: number): Float64Array[] {
   const { ring, recorder } = recording(folder);
   recorder.take({ kind: "manifest", ringRow: 0, manifest: MANIFEST });
-  recorder.take({ kind: "session", ringRow: 0, session: "lit", at: wall(START_MS) });
+  recorder.take({ kind: "session", ringRow: 0, session: "lit", at: wall(START_ms) });
   const rows: Float64Array[] = [];
   for (let i = 0; i < count; i++) {
     const row = maker(i);
