@@ -1,5 +1,7 @@
 import type { Bench } from "../model/bench.ts";
+import type { Law } from "../model/conversion.ts";
 import { type Channel, channelNamed, type Manifest } from "../model/manifest.ts";
+import { formatQuantity } from "../model/quantities.ts";
 import { lawToUnit, sensorShare } from "../physics/convert.ts";
 import { derated_mA, junctionLimited_mA } from "../physics/diode.ts";
 
@@ -36,6 +38,8 @@ export function makeCurve(
   if (problems.length > 0 || caseChannel === undefined || setChannel === undefined) {
     return { problems };
   }
+  const reach = reachProblem(bench, caseChannel);
+  if (reach !== null) return { problems: [reach] };
   const exact = exactCeilings(bench, caseChannel, setChannel.perCount, manifest.absolute_counts);
   const from = Math.max(0, caseChannel.count_min);
   const first = exact.findIndex((counts) => counts > 0);
@@ -112,6 +116,24 @@ function channelProblems(
   return problems;
 }
 
+const caseLaw = (bench: Bench, channel: Channel): Law =>
+  bench.conversions.case?.law ?? { kind: "linear", perCount: channel.perCount, offset: 0 };
+
+/** A case channel whose counts end below the trip level would never show a case too warm. */
+function reachProblem(bench: Bench, channel: Channel): string | null {
+  const { trip } = bench.hazards["case-over"];
+  if (trip === null) return null;
+  const law = caseLaw(bench, channel);
+  const ends = [lawToUnit(law, channel.count_min), lawToUnit(law, channel.count_max)];
+  const top_degC = Math.max(...ends);
+  if (top_degC > trip) return null;
+  const words = (degC: number): string => formatQuantity("temperature", degC);
+  return (
+    `The board's case channel reads at most ${words(top_degC)}, and hazards.case-over trips at ` +
+    `${words(trip)}. Change the sensor's range on the board, or lower the trip.`
+  );
+}
+
 /** The exact ceiling in whole set counts, rounded down, at every count from the lowest on. */
 function exactCeilings(
   bench: Bench,
@@ -121,11 +143,7 @@ function exactCeilings(
 ): Int32Array {
   const from = Math.max(0, channel.count_min);
   const exact = new Int32Array(Math.max(0, channel.count_max - from + 1));
-  const law = bench.conversions.case?.law ?? {
-    kind: "linear",
-    perCount: channel.perCount,
-    offset: 0,
-  };
+  const law = caseLaw(bench, channel);
   const open = bench.hazards["case-open"].trip ?? 1;
   const short = bench.hazards["case-short"].trip ?? 0;
   const most = Math.min(absolute_counts, POINT_MAX);

@@ -5,6 +5,7 @@ import { formatQuantity } from "../model/quantities.ts";
 import { KINDS, type QuantityKind } from "../model/quantity-units.ts";
 import { REACTION_ms, slowestRates } from "./lints/hazards.ts";
 import { wireShares } from "./lints/link.ts";
+import { worstHeating_K } from "./lints/sensors.ts";
 
 /** A bench as places in its file and words, in the file's order: what `differences` compares. */
 type Facts = Map<string, string>;
@@ -38,6 +39,12 @@ export function consequences(bench: Bench): string[] {
   if (up > 0) {
     const shares = `${formatQuantity("ratio", up)} of the line upward, ${formatQuantity("ratio", down)} downward`;
     sentences.push(`The wire: samples and permits fill at most ${shares}.`);
+  }
+  for (const [name, { law }] of Object.entries(bench.conversions)) {
+    const heating_K = worstHeating_K(law);
+    if (heating_K === 0) continue;
+    const words = formatQuantity("difference", heating_K, 0.01);
+    sentences.push(`The sensor of ${name}: its divider warms it by up to ${words}.`);
   }
   for (const { id, slowest_perS } of slowestRates(bench)) {
     const { trip, tripDelay_ms, safety_ms } = bench.hazards[id];
@@ -162,7 +169,11 @@ function conversionWords({ version, law, error }: Conversion): string {
   const end = `error ${error}, version ${version}`;
   if (law.kind === "linear") return `${law.perCount} a count from ${law.offset}, ${end}`;
   const { divider } = law;
-  const place = `${divider.sensor}, fixed ${exact("resistance", divider.fixed_ohm)}, full ${divider.full_counts} counts`;
+  const heating =
+    divider.heating === undefined
+      ? ""
+      : `, ${exact("voltage", divider.heating.supply_mV)}, ${exact("dissipation", divider.heating.dissipation_mWperK)}`;
+  const place = `${divider.sensor}, fixed ${exact("resistance", divider.fixed_ohm)}, full ${divider.full_counts} counts${heating}`;
   const constants =
     law.kind === "ntc"
       ? `r25 ${exact("resistance", law.r25_ohm)}, beta ${exact("difference", law.beta_K)}`

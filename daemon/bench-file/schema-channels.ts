@@ -8,6 +8,8 @@ const divider = {
   fixed: quantity("resistance", { min: 1, max: 10_000_000 }),
   place: oneOf("where the sensor sits in the divider", ["to-ground", "to-supply"], "to-ground"),
   full: quantity("count", { min: 16, max: 16_777_216 }),
+  supply: quantity("voltage", { min: 100, max: 50_000 }).optional(),
+  dissipation: quantity("dissipation", { min: 0.01, max: 1000 }).optional(),
 };
 
 const any = <T extends z.ZodType>(schema: T) => schema.optional();

@@ -5,7 +5,7 @@ import type {
   ProtectionsPart,
   TransportSpec,
 } from "../model/bench.ts";
-import type { Conversion, Law } from "../model/conversion.ts";
+import type { Conversion, Divider, Law } from "../model/conversion.ts";
 import { kindFindings } from "./channel-kinds.ts";
 import type { Finding } from "./problem.ts";
 import type { BenchFile } from "./schema.ts";
@@ -155,11 +155,6 @@ function lawsOf(channel: ChannelFile): Law[] {
   const laws: Law[] = [];
   const { linear, ntc, platinum } = channel;
   const sh = channel["steinhart-hart"];
-  const dividerOf = (part: { fixed: number; place: "to-ground" | "to-supply"; full: number }) => ({
-    fixed_ohm: part.fixed,
-    sensor: part.place,
-    full_counts: part.full,
-  });
   if (linear !== undefined) {
     const offset = linear.offset?.value ?? 0;
     laws.push({ kind: "linear", perCount: linear["per-count"].value, offset });
@@ -174,4 +169,18 @@ function lawsOf(channel: ChannelFile): Law[] {
     laws.push({ kind: "platinum", divider: dividerOf(platinum), r0_ohm: platinum.r0 });
   }
   return laws;
+}
+
+interface DividerFile {
+  readonly fixed: number;
+  readonly place: Divider["sensor"];
+  readonly full: number;
+  readonly supply?: number | undefined;
+  readonly dissipation?: number | undefined;
+}
+
+function dividerOf({ fixed, place, full, supply, dissipation }: DividerFile): Divider {
+  const divider = { fixed_ohm: fixed, sensor: place, full_counts: full };
+  if (supply === undefined || dissipation === undefined) return divider;
+  return { ...divider, heating: { supply_mV: supply, dissipation_mWperK: dissipation } };
 }

@@ -30,6 +30,8 @@ export interface Divider {
   readonly sensor: "to-ground" | "to-supply";
   /** Counts that stand for the full supply (1024 for a 10-bit converter). */
   readonly full_counts: number;
+  /** For telling how much the divider's own current warms the sensor; absent where not known. */
+  readonly heating?: { readonly supply_mV: number; readonly dissipation_mWperK: number };
 }
 
 export interface Conversion {

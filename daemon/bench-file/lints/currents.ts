@@ -139,6 +139,8 @@ function lintLoop(bench: Bench): Finding[] {
   for (const [n, point] of derating.entries()) {
     const before = derating[n - 1];
     if (before === undefined || point.case_degC <= before.case_degC) continue;
+    // Where the bench limit is lower, the derating's fall does not move the ceiling.
+    if (point.current_mA >= bench.limits.current_mA) continue;
     const fall = (before.current_mA - point.current_mA) / (point.case_degC - before.case_degC);
     const middle_mA = (before.current_mA + point.current_mA) / 2;
     const middle_degC = (before.case_degC + point.case_degC) / 2;

@@ -1,7 +1,13 @@
 import type { Bench } from "../../model/bench.ts";
-import type { Divider, Law } from "../../model/conversion.ts";
+import type { Conversion, Divider, Law } from "../../model/conversion.ts";
 import { formatQuantity } from "../../model/quantities.ts";
-import { direction, lawToCount, lawToUnit, sensorShare } from "../../physics/convert.ts";
+import {
+  direction,
+  lawToCount,
+  lawToUnit,
+  selfHeating_K,
+  sensorShare,
+} from "../../physics/convert.ts";
 import type { Finding } from "../problem.ts";
 import { error, warning } from "./finding.ts";
 
@@ -18,11 +24,13 @@ const degC = (value: number): string => formatQuantity("temperature", value);
 
 export function lintSensors(bench: Bench): Finding[] {
   const findings: Finding[] = [];
-  for (const [name, { law }] of Object.entries(bench.conversions)) {
+  for (const [name, conversion] of Object.entries(bench.conversions)) {
+    const { law } = conversion;
     if (law.kind === "linear") continue;
     const path = ["channels", name, law.kind] as const;
     const nonsense = lintConstants(law, path);
     findings.push(...nonsense);
+    if (nonsense.length === 0) findings.push(...lintHeating(conversion, name));
     if (name === "case" && nonsense.length === 0) findings.push(...lintSpan(bench, law, path));
   }
   return [...findings, ...lintUnseen(bench)];
@@ -89,6 +97,27 @@ function countStep_K(law: Law, divider: Divider, at_degC: number): number {
   const one = direction(law);
   const next = Math.min(divider.full_counts, Math.max(0, count + one));
   return Math.abs(lawToUnit(law, next) - at_degC);
+}
+
+/** How much a sensor is warmed by its own divider where it is warmed most; 0 where not known. */
+export function worstHeating_K(law: Law): number {
+  if (law.kind === "linear" || law.divider.heating === undefined) return 0;
+  const { supply_mV, dissipation_mWperK } = law.divider.heating;
+  // A divider gives its sensor the most where both resistors are equal.
+  const fixed = law.divider.fixed_ohm;
+  return selfHeating_K(supply_mV, fixed, fixed, dissipation_mWperK);
+}
+
+function lintHeating({ law, error: stated_K }: Conversion, name: string): Finding[] {
+  const heating_K = worstHeating_K(law);
+  if (heating_K <= stated_K) return [];
+  return [
+    warning("self-heating", ["channels", name, "error"], {
+      found: `a sensor that its own divider warms by up to ${formatQuantity("difference", heating_K, 0.01)}`,
+      wanted: `at most the stated error of ${formatQuantity("difference", stated_K, 0.01)}`,
+      do: "power the divider only while it is read, use larger resistors, or state a larger error",
+    }),
+  ];
 }
 
 /** Rows that see nothing unless the board itself tells the unit. */

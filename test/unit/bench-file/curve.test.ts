@@ -194,6 +194,11 @@ describe("refused in words", () => {
     const channels = manifest.channels.map((channel) => ({ ...channel, unit: "V" }));
     expect(problems(north, { ...manifest, channels })).toMatch(/needs mA/);
   });
+  test("a case channel that never reads as warm as the trip", () => {
+    const manifest = board(16_383, 0.5);
+    const channels = manifest.channels.map((channel) => ({ ...channel, count_min: 6000 }));
+    expect(problems(north, { ...manifest, channels })).toMatch(/reads at most 37\.\d.*trips at 50/);
+  });
   test("a bench that allows no current", () => {
     const cold = north.derating.map((point) => ({ ...point, current_mA: 0 }));
     expect(problems({ ...north, derating: cold }, board(1023, 0.5))).toMatch(/no current/);

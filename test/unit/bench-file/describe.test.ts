@@ -74,6 +74,16 @@ test("consequences name the wire's shares and each row's slowest rate", () => {
   expect(consequences(north)[0]).toMatch(/^over-ceiling/);
 });
 
+test("consequences tell what a divider does to its sensor: 0.625 mW at 1.5 mW/K", () => {
+  const text = changed(
+    NORTH,
+    "full: 16384 counts",
+    "full: 16384 counts\n      supply: 5 V\n      dissipation: 1.5 mW/K\n     ",
+  );
+  const [sensor] = plain(consequences(benchOf(text)));
+  expect(sensor).toBe("The sensor of case: its divider warms it by up to 0.42 K.");
+});
+
 describe("problems as lines", () => {
   test("two lines a problem, with the place a terminal can open", () => {
     const text = changed(NORTH, "current: 1.9 A", "current: 2.6 A");

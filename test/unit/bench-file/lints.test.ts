@@ -1,8 +1,6 @@
 import { describe, expect, test } from "vitest";
-import { lintManifest } from "../../../daemon/bench-file/lints/manifest.ts";
 import { parseBench } from "../../../daemon/bench-file/parse.ts";
-import type { Channel, Manifest } from "../../../daemon/model/manifest.ts";
-import { BARE_DIODE, benchOf, changed, NORTH } from "./files.ts";
+import { BARE_DIODE, changed, NORTH } from "./files.ts";
 
 /** One lint: a change that makes it speak, and a near one that does not. */
 interface Case {
@@ -227,6 +225,15 @@ const CASES: readonly Case[] = [
     "  photodiode:\n    error: 10 mW",
     BARE_DIODE,
   ),
+  lint(
+    "warning",
+    "self-heating",
+    "channels.case.error",
+    "full: 16384 counts }",
+    "full: 16384 counts, supply: 5 V, dissipation: 0.5 mW/K }",
+    "full: 16384 counts, supply: 5 V, dissipation: 0.7 mW/K }",
+    BARE_DIODE,
+  ),
   lint("warning", "protection", "protections.key", "key: yes", "key: no", "key: yes"),
 ];
 
@@ -241,61 +248,4 @@ describe.each(CASES.map((one) => [`${one.code} at ${one.path}`, one] as const))(
     expect(problem?.line).toBeGreaterThan(1);
   });
   test(`is quiet at "${one.quiet[1]}"`, () => expect(spoken(one.quiet)).toEqual([]));
-});
-
-describe("what the board's introduction shows", () => {
-  const channel = (index: number, name: string, unit: string, count_max: number): Channel => ({
-    index,
-    name,
-    unit,
-    perCount: 0.5,
-    count_min: 0,
-    count_max,
-    group: 0,
-  });
-  const manifest: Manifest = {
-    id: "00000001",
-    protocol: 1,
-    firmware: "test-1",
-    serial: "T1",
-    boot: 1,
-    tick_us: 1000,
-    absolute_counts: 4400,
-    curveCrc: "00000000",
-    term_ticks_min: 150,
-    term_ticks_max: 10_000,
-    fall_ms: 59,
-    rate_perS: 50,
-    capabilities: ["toggle"],
-    channels: [
-      channel(0, "set", "mA", 4400),
-      channel(1, "current", "mA", 4400),
-      channel(2, "case", "adc", 16_383),
-      channel(3, "photodiode", "adc", 16_383),
-    ],
-  };
-  const north = benchOf(NORTH);
-  const codes = (changes: Partial<Manifest>): string[] =>
-    lintManifest(north, { ...manifest, ...changes }).map((finding) => finding.code);
-
-  test("a fitting board is taken without a word", () => expect(codes({})).toEqual([]));
-  test("a slower board", () => expect(codes({ rate_perS: 49 })).toEqual(["board-slow"]));
-  test("a term it does not allow", () => {
-    expect(codes({ term_ticks_max: 499 })).toEqual(["board-term"]);
-    expect(codes({ term_ticks_max: 500 })).toEqual([]);
-  });
-  test("an enable that is not toggled", () => {
-    expect(codes({ capabilities: [] })).toEqual(["board-toggle"]);
-  });
-  test("rows that see nothing without a channel", () => {
-    const blind = codes({ channels: manifest.channels.slice(0, 3) });
-    expect(new Set(blind)).toEqual(new Set(["blind"]));
-    expect(blind.length).toBeGreaterThanOrEqual(3);
-  });
-  test("a case channel that never reads as warm as the trip", () => {
-    const [set, current, , photodiode] = manifest.channels;
-    if (set === undefined || current === undefined || photodiode === undefined) expect.fail();
-    const cold = { ...channel(2, "case", "adc", 16_383), count_min: 6000 };
-    expect(codes({ channels: [set, current, cold, photodiode] })).toEqual(["sensor-span"]);
-  });
 });
