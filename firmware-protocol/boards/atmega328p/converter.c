@@ -110,16 +110,16 @@ static uint16_t average(uint16_t sum, uint8_t count) {
   return (uint16_t)(((uint32_t)sum * STEPS_TO_READING + count / 2u) / count);
 }
 
-bool converter_sample(struct converter_sample *sample) {
+bool converter_sample(int32_t reading[INPUTS], uint32_t *at) {
   struct sums sums;
   bool whole;
   ATOMIC_BLOCK(ATOMIC_RESTORESTATE) {
     whole = fresh;
     fresh = false;
     sums = finished;
-    sample->tick = finishedTick;
+    *at = finishedTick;
   }
   if (!whole) return false;
-  for (uint8_t n = 0; n < INPUTS; n++) sample->reading[n] = average(sums.sum[n], sums.count[n]);
+  for (uint8_t n = 0; n < INPUTS; n++) reading[n] = average(sums.sum[n], sums.count[n]);
   return true;
 }

@@ -28,20 +28,15 @@
 
 #define READING_MAX 16368 /* 16 × 1023 */
 
-/* What is read, in the order of converter_sample.reading. */
+/* What is read, in the order in which converter_sample gives it. */
 enum converter_input {
   INPUT_CURRENT,
   INPUT_CASE,
   INPUT_PHOTODIODE,
-  INPUT_BANDGAP,
   INPUT_FORWARD,
+  INPUT_BANDGAP,
   INPUT_SINK,
   INPUTS
-};
-
-struct converter_sample {
-  uint32_t tick; /* at the end of its last conversion */
-  uint16_t reading[INPUTS];
 };
 
 void converter_init(void);
@@ -49,8 +44,9 @@ void converter_init(void);
 /* Ticks since boot; wraps after 49 days. */
 uint32_t converter_tick(void);
 
-/* The newest whole sample; false when there was none since the last call. */
-bool converter_sample(struct converter_sample *sample);
+/* The newest whole sample and the tick at the end of its last conversion; false, and nothing
+ * written, when there was none since the last call. */
+bool converter_sample(int32_t reading[INPUTS], uint32_t *at);
 
 /* Bits that the noise of the newest conversions moves. */
 uint16_t converter_noise(void);

@@ -21,7 +21,10 @@
 #error "the facts count terms in ticks of one millisecond"
 #endif
 
+/* Behind the first come the converter's inputs, in its own order. */
 enum channel { SET, CURRENT, CASE, PHOTODIODE, FORWARD, SUPPLY, SINK, CHANNELS };
+
+_Static_assert(SUPPLY == 1 + INPUT_BANDGAP && CHANNELS == 1 + INPUTS, "channels follow inputs");
 
 static const __flash struct core_channel channels[CHANNELS] = {
     {"set", "mA", 2, 0, 0, DRIVE_MAX, 0},
@@ -142,26 +145,20 @@ static void readInputs(void) {
 }
 
 /* The supply from the band-gap read against it: one reference never judges itself. */
-static int32_t supply_mV(uint16_t bandgap) {
-  if (bandgap == 0) return 0;
-  const uint32_t mV = (uint32_t)BANDGAP_MV * 16384u / bandgap;
+static int32_t supply_mV(int32_t bandgap) {
+  if (bandgap <= 0) return 0;
+  const uint32_t mV = (uint32_t)BANDGAP_MV * 16384u / (uint16_t)bandgap;
   return mV > 65535u ? 65535 : (int32_t)mV;
 }
 
 /* Apart from main, so that its locals are off the stack during a pass. */
 static __attribute__((noinline)) void giveReadings(void) {
-  struct converter_sample sample;
-  if (!converter_sample(&sample)) return;
-  const int32_t values[CHANNELS] = {
-      [SET] = 0, /* the core puts the drive here */
-      [CURRENT] = sample.reading[INPUT_CURRENT],
-      [CASE] = sample.reading[INPUT_CASE],
-      [PHOTODIODE] = sample.reading[INPUT_PHOTODIODE],
-      [FORWARD] = sample.reading[INPUT_FORWARD],
-      [SUPPLY] = supply_mV(sample.reading[INPUT_BANDGAP]),
-      [SINK] = sample.reading[INPUT_SINK],
-  };
-  core_reading(&core, values, sample.tick);
+  int32_t values[CHANNELS];
+  uint32_t tick;
+  if (!converter_sample(&values[CURRENT], &tick)) return;
+  values[SET] = 0; /* the core puts its drive here */
+  values[SUPPLY] = supply_mV(values[SUPPLY]);
+  core_reading(&core, values, tick);
 }
 
 /* Inputs with pull-ups; pins that lead nowhere too, so that none floats. */
