@@ -41,7 +41,7 @@ export const ROOMS_TABLE: readonly Room[] = [
   },
   {
     path: "daemon/link/transports",
-    rooms: [MODEL, "daemon/link", "daemon/bench-sim", "daemon/paths.ts"],
+    rooms: [MODEL, PROTOCOL, "daemon/link", "daemon/bench-sim", "daemon/paths.ts"],
     packages: ["node:*", "serialport", "@serialport/parser-readline"],
   },
   {
