@@ -45,7 +45,7 @@ struct core_board {
   uint16_t tick_us;  /* 100 to 10000 */
   uint16_t absolute; /* highest drive ever, counts of set */
   uint16_t term_min; /* ticks */
-  uint16_t term_max; /* ticks */
+  uint16_t term_max; /* ticks, at most 32767: the ring keeps 16 bits of a sample's tick */
   uint16_t fall_ms;  /* from full current to dark of the output stage */
   uint16_t rate_perS;
 
@@ -76,7 +76,7 @@ struct core_board {
 
   uint16_t dark_current; /* counts of current that may not flow while dark, 20 mA's worth */
   uint16_t dark_current_ms;
-  uint16_t follow_ms;         /* current 5 % above its aim this long is a trip */
+  uint16_t follow_ms; /* current 5 % (or a quarter of dark_current) above its aim: a trip */
   uint16_t converter_stop_ms; /* no conversion this long, while armed, is a trip */
 
   uint16_t emission_delay_ms; /* 3000 to 5000 */

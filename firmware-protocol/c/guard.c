@@ -126,7 +126,8 @@ static void judge_current(struct core *c, int32_t counts, uint32_t tick) {
   uint32_t current = counts > 0 ? (uint32_t)counts : 0u;
   uint16_t top = core_peak_top(&c->drives);
   uint32_t most = meant(c, top);
-  most = greater(most + greater(most / 20u, LSB_MIN), b->dark_current);
+  /* 5 %; near zero an offset of the converter is no hazard: a quarter of the dark limit at least. */
+  most = greater(most + greater(most / 20u, b->dark_current / 4u), b->dark_current);
   c->flowing = (uint8_t)(current > b->dark_current);
   uint8_t above = (uint8_t)(top > 0u && current > most);
   uint8_t stray = (uint8_t)(top == 0u && c->flowing);

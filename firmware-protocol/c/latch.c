@@ -4,7 +4,8 @@
  * Memory follows the wanted picture one byte at a time, lowest address first, never waiting. That
  * order makes a cut at any byte safe: a latch is written A then B and cleared A then B, so one of
  * the two always says latched until both say clear; the lit mark is whole-clear or it is lit.
- * Anything else than a clean "clear" is read as tripped. Memory never written (all 0xFF) is clear.
+ * Anything else than a clean "clear" is read as tripped. Memory never written (all 0xFF, counter and
+ * all) is clear.
  *
  *   0..2 latch A (mark, cause, check)   3..5 latch B   6..7 lit mark
  *   16..111 slots of six bytes: counter, lowest byte first, and a CRC-16 over it and the slot
@@ -141,9 +142,9 @@ void core_memory_start(struct core *c, uint8_t reset_kind) {
     start_tripped(c, CORE_CAUSE_MEMORY);
     return;
   }
-  if (!erased) read_latch(c, image, reset_kind);
-  c->latch_dirty = 1; /* so that a half-written picture is made whole */
   if (!read_slots(c)) c->memory = 0;
+  if (!erased || c->slot != NO_SLOT) read_latch(c, image, reset_kind);
+  c->latch_dirty = 1; /* so that a half-written picture is made whole */
 }
 
 static void memory_fails(struct core *c) {

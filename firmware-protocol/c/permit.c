@@ -49,4 +49,6 @@ void core_obey_permit(struct core *c, const struct core_order *o) {
   p->seen = 1;
   p->live = 1;
   c->opened.on = 0;
+  CORE_ASSERT(c, p->aim <= p->cap && p->cap <= c->board->absolute);
+  CORE_ASSERT(c, age < p->term);
 }

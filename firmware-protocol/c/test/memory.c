@@ -198,6 +198,15 @@ void test_memory_broken(struct bench *b) {
   bench_curve(b, 4400);
   bench_line(b, ">ask arm");
   CHECK(bench_heard(b, "<no ask memory "));
+  /* The latch's bytes lost, the counter's not: nobody knows what they said. */
+  bench_make(b);
+  bench_boot(b, CORE_POWER);
+  CHECK(bench_arm(b));
+  bench_line(b, ">dark 0");
+  bench_run(b, 50);
+  memset(b->nv, 0xFF, 8);
+  bench_boot(b, CORE_POWER);
+  CHECK(b->core.state == CORE_TRIPPED && b->core.cause == CORE_CAUSE_POWER_LOST);
   /* All slots garbage: nobody knows which numbers were given out. */
   bench_make(b);
   for (int i = 16; i < 112; i++) b->nv[i] = (uint8_t)(i * 7);
