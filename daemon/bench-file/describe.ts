@@ -46,13 +46,16 @@ export function consequences(bench: Bench): string[] {
     const words = formatQuantity("difference", heating_K, 0.01);
     sentences.push(`The sensor of ${name}: its divider warms it by up to ${words}.`);
   }
+  sentences.push(
+    `Each row below counts ${REACTION_ms} ms for line, judge and fall of the current within its safety time.`,
+  );
   for (const { id, slowest_perS } of slowestRates(bench)) {
     const { trip, tripDelay_ms, safety_ms } = bench.hazards[id];
     const level = HAZARD_ROWS[id].level === "fact" ? "" : ` at ${levelWords(id, trip)}`;
+    const delay = tripDelay_ms === 0 ? "at once" : `after ${time(tripDelay_ms)}`;
     const rate = formatQuantity("rate", slowest_perS, 0.1);
     sentences.push(
-      `${id}: trips${level} after ${time(tripDelay_ms)}, dark within ${time(safety_ms)} ` +
-        `(${REACTION_ms} ms of it for line, judge and fall); needs ${rate} or more.`,
+      `${id}: trips${level} ${delay}; dark within ${time(safety_ms)} with ${rate} or more.`,
     );
   }
   return sentences;

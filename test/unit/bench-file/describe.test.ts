@@ -69,9 +69,10 @@ test("consequences name the wire's shares and each row's slowest rate", () => {
     "The wire: samples and permits fill at most 48 % of the line upward, 8 % downward.",
   );
   expect(rows).toContain(
-    "over-ceiling: trips at 101 % after 30 ms, dark within 250 ms (110 ms of it for line, judge and fall); needs 18.2 /s or more.",
+    "over-ceiling: trips at 101 % after 30 ms; dark within 250 ms with 18.2 /s or more.",
   );
-  expect(consequences(north)[0]).toMatch(/^over-ceiling/);
+  expect(rows).toContain("key: trips at once; dark within 250 ms with 7.1 /s or more.");
+  expect(consequences(north)[0]).toMatch(/^Each row/);
 });
 
 test("consequences tell what a divider does to its sensor: 0.625 mW at 1.5 mW/K", () => {
