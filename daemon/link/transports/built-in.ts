@@ -18,9 +18,10 @@ export class BuiltInTransport implements Transport {
     const lines = new LineSplitter((line) => this.once.line(line));
     queueMicrotask(() => {
       if (this.once.isEnded) return;
+      // Started first, so that the host's first question already finds it.
+      this.bench.start();
       this.bench.onBytes = (bytes) => lines.feed(bytes);
       this.once.opened();
-      this.bench.start();
     });
   }
 

@@ -122,7 +122,39 @@ describe(`lines (seed ${SEED})`, () => {
       expect(judged.kind === "broken" ? judged.broken : "").toBe(wanted);
     }
     expect(bySplitter([Buffer.from(`${"x".repeat(160)}\r\n`)])[0]).toHaveLength(160);
+    // A carriage return where the head ends must not make a legal line of an over-long one.
+    expect(bySplitter([Buffer.from(`${"x".repeat(160)}\rmore\n`)])[0]).toHaveLength(162);
     expect(bySplitter([Buffer.from(`${"x".repeat(161)}\r\n`)])[0]).toHaveLength(161);
+  });
+
+  test("the built-in bench hears the first line written on opening, and none after the end", async () => {
+    const heard: string[] = [];
+    let running = false;
+    const bench: BuiltInBench = {
+      write: (chunk) => {
+        if (running) heard.push(Buffer.from(chunk).toString("latin1"));
+      },
+      onBytes() {},
+      start: () => {
+        running = true;
+      },
+      stop() {},
+    };
+    const transport = new BuiltInTransport(bench);
+    expect(transport.write("early\n")).toBe(false);
+    await new Promise<void>((resolve) => {
+      transport.open({
+        opened: () => {
+          transport.write(">who 1\n");
+          resolve();
+        },
+        line() {},
+        closed() {},
+      });
+    });
+    transport.close();
+    expect(transport.write("late\n")).toBe(false);
+    expect(heard).toEqual([">who 1\n"]);
   });
 
   test("a flood without a line end takes no memory and is counted", () => {

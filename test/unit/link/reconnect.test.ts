@@ -104,7 +104,9 @@ describe("reconnecting", () => {
     expect(b.pauses.slice(1, 5)).toEqual([PAUSE_MS_MIN, 500, 1000, 2000]);
     expect(Math.max(...b.pauses)).toBe(PAUSE_MS_MAX);
     b.newest().handlers.opened();
+    expect(b.link.status.tries).toBe(9);
     b.newest().handlers.line("<say hello");
+    expect(b.link.status.tries).toBe(0);
     b.newest().handlers.closed("unplugged");
     expect(b.pauses.at(-1)).toBe(PAUSE_MS_MIN);
   });
