@@ -146,11 +146,11 @@ export function formatQuantity(
   return `${signed}${NO_BREAK}${choice.symbol}`;
 }
 
-/** Currents, powers and voltages read in the large unit from a tenth of it on: 0.40 A, but 20 mA. */
+/** Currents and voltages read in the large unit from a tenth of it on: 0.40 A, but 20 mA, 282 mW. */
 function pickShown(kind: QuantityKind, value: number): Shown {
   const choices = SHOWN[kind];
   const size = Math.abs(value);
-  const reach = kind === "current" || kind === "power" || kind === "voltage" ? 0.1 : 1;
+  const reach = kind === "current" || kind === "voltage" ? 0.1 : 1;
   // 90 s reads better than 1.5 min, 100 min better than 1.67 h.
   const patience = kind === "time" ? 2 : 1;
   for (const choice of choices) {

@@ -88,6 +88,7 @@ describe("writing", () => {
     ["ratio", 0.05, undefined, "5 %"],
     ["ratio", 0.9876, 0.001, "98.8 %"],
     ["power", 1470, undefined, "1.47 W"],
+    ["power", 282.4, undefined, "282 mW"],
     ["power", Number.NaN, undefined, "not known"],
     ["current", Number.POSITIVE_INFINITY, undefined, "not known"],
   ])("%s %f at %s is %s", (kind, value, resolution, words) => {
