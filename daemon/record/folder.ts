@@ -104,10 +104,11 @@ export function openForWriting(
  */
 export function closeWritten(db: Database.Database): void {
   try {
+    db.pragma("busy_timeout = 0");
     db.pragma("journal_mode = DELETE");
   } catch (error) {
-    // A reader has it open: the log stays beside it, and nothing is lost.
-    if (!errorCode(error).startsWith("SQLITE_BUSY")) throw error;
+    // A reader has it open, or the disk refuses: the log stays beside the file, nothing is lost.
+    if (!errorCode(error).startsWith("SQLITE_")) throw error;
   } finally {
     db.close();
   }

@@ -60,6 +60,8 @@ export class Recorder {
   #blocksWaiting = 0;
   #position = 0;
   #lostRows = 0;
+  /** How many of them the record knows of. */
+  #lostTold = 0;
   #lostEntries = 0;
   /** What the next row belongs to. */
   #benchFile: number;
@@ -182,7 +184,7 @@ export class Recorder {
   /** Ends the session and packs the last block, then gives the folder free. */
   close(): void {
     this.flush();
-    this.#endSession(this.#lastWall);
+    this.#endSession((this.#options.wall_ms ?? Date.now)());
     this.#commit();
     this.store.close();
   }
@@ -218,6 +220,8 @@ export class Recorder {
     this.#announced.session = session;
     this.#at(ringRow, () => {
       this.#finishBlock();
+      // One that was begun for samples that came between two sessions.
+      if (this.#session !== before) this.#endSession(at);
       this.#session = session;
     });
   }
@@ -269,7 +273,6 @@ export class Recorder {
   #lose(rows: number): void {
     this.#position += rows;
     this.#lostRows += rows;
-    this.#pending.push({ op: "lost", run: this.#run, samples: rows });
   }
 
   #takeRow(): void {
@@ -331,10 +334,10 @@ export class Recorder {
     this.#storedRows = 0;
   }
 
-  #endSession(at: number | null): void {
+  #endSession(at: number): void {
     this.#finishBlock();
     const session = this.#session;
-    if (session !== null && at !== null) this.#pending.push({ op: "session-end", session, at });
+    if (session !== null) this.#pending.push({ op: "session-end", session, at });
     this.#session = null;
   }
 
@@ -343,8 +346,10 @@ export class Recorder {
     const staging = this.#staging;
     const unstored = staging !== null && staging.n > this.#storedRows;
     const rows = unstored ? this.#rowsOf(staging, this.#storedRows) : null;
-    const ops: readonly WriteOp[] =
-      rows === null ? this.#pending : [...this.#pending, { op: "tail", rows }];
+    const ops = [...this.#pending];
+    if (rows !== null) ops.push({ op: "tail", rows });
+    const samples = this.#lostRows;
+    if (samples > this.#lostTold) ops.push({ op: "lost", run: this.#run, samples });
     try {
       this.store.write(ops);
     } catch (error) {
@@ -353,6 +358,7 @@ export class Recorder {
     }
     this.#pending = [];
     this.#blocksWaiting = 0;
+    this.#lostTold = samples;
     if (staging !== null) this.#storedRows = staging.n;
     if (this.#trouble !== "") {
       this.#trouble = "";

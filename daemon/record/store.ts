@@ -93,7 +93,7 @@ const STATEMENTS = {
   rollup: "INSERT INTO rollup_1s (block, codec, crc, blob) VALUES (?,?,?,?)",
   tailDone: "DELETE FROM tail WHERE block = ?",
   gap: "INSERT INTO gaps (bench, from_wall_ms, to_wall_ms) VALUES (?,?,?)",
-  lost: "UPDATE runs SET lost_samples = lost_samples + ? WHERE id = ?",
+  lost: "UPDATE runs SET lost_samples = ? WHERE id = ?",
   latch: "INSERT OR REPLACE INTO latch (bench, cause, wall_ms, serial, lit) VALUES (?,?,?,?,?)",
 } as const;
 type StatementName = keyof typeof STATEMENTS;

@@ -2,6 +2,7 @@ import { type ChildProcess, spawn } from "node:child_process";
 import { once } from "node:events";
 import { createInterface } from "node:readline";
 import { describe, expect, test } from "vitest";
+import type { FromRecorder } from "../../daemon/model/record-messages.ts";
 import { Ring, ringBytes } from "../../daemon/model/ring.ts";
 import { wall } from "../../daemon/model/times.ts";
 import { builtFile } from "../../daemon/paths.ts";
@@ -114,13 +115,38 @@ async function expectRepaired(folder: string): Promise<void> {
   reader.close();
 }
 
-function startHere(folder: string): RecorderClient {
+function startHere(
+  folder: string,
+  tell: (message: FromRecorder) => void = () => undefined,
+): RecorderClient {
   const ring = new Ring(new SharedArrayBuffer(ringBytes(100)));
   return new RecorderClient(
     { folder, bench: "north", benchText: "name: north\n", judgeVersion: 1, ring: ring.memory },
-    () => undefined,
+    tell,
   );
 }
+
+describe("a recorder that ends by itself", () => {
+  test("is told, and what is posted afterwards holds nobody up", async () => {
+    const { folder, remove } = scratchFolder();
+    const told: FromRecorder[] = [];
+    const client = startHere(folder, (message) => told.push(message));
+    await client.opened;
+    client.post({ kind: "manifest", ringRow: 0, manifest: undefined as never });
+    await client.flush();
+    expect(told.at(-1)).toMatchObject({
+      kind: "failed",
+      what: "The recorder ended by itself; nothing more is recorded.",
+    });
+    client.post({ kind: "event", event: undefined as never });
+    await client.flush();
+    await client.close();
+    const next = startHere(folder);
+    await next.opened;
+    await next.close();
+    remove();
+  });
+});
 
 describe("one data folder, two daemons", () => {
   test("the second is refused and told whose it is; after a kill the folder is free", async () => {

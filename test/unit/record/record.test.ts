@@ -113,6 +113,70 @@ describe("what goes in comes out", () => {
   });
 });
 
+describe("reading while it is written", () => {
+  test("a question begun before a block was packed has each sample once", async () => {
+    const { folder } = scratch;
+    let now_ms = 0;
+    const { ring, recorder } = recording(folder, 2000, { now_ms: () => now_ms });
+    recorder.take({ kind: "manifest", ringRow: 0, manifest: MANIFEST });
+    const make = rowMaker(6, every50ms);
+    const record = (from: number, to: number): void => {
+      for (let i = from; i < to; i++) {
+        publish(ring, make(i));
+        if (i % 20 === 0) now_ms += 1000;
+        recorder.drain();
+      }
+    };
+    record(0, 700);
+    recorder.flush();
+    const reader = openReader(folder);
+    const inputs = reader.inputs(1);
+    const numbers = [inputs.next().value.n as number];
+    const window = { from: wall(START_ms), to: wall(START_ms + 1e6) };
+    const query = { bench: "north", channels: ["current"], window, pixels: 10_000 };
+    const asked = reader.series(query);
+    record(700, 1500);
+    for (const input of inputs) numbers.push(input.n);
+    expect(numbers).toEqual(Array.from({ length: 700 }, (_, i) => i + 1));
+    expect((await asked).channels.current?.t).toHaveLength(700);
+    recorder.flush();
+    expect((await reader.series(query)).channels.current?.t).toHaveLength(1500);
+    // The folder can be left while somebody reads, and opened again.
+    recorder.close();
+    expect([...reader.inputs(1)]).toHaveLength(1500);
+    recording(folder).recorder.close();
+    expect(reader.runs()).toHaveLength(2);
+    reader.close();
+  });
+
+  test("samples between two sessions get one of their own, and every session an end", () => {
+    const { folder } = scratch;
+    const { ring, recorder } = recording(folder, 2000, { wall_ms: () => START_ms + 9000 });
+    const make = rowMaker(8, every50ms);
+    const session = (ringRow: number, kind: "lit" | "end"): void =>
+      recorder.take({ kind: "session", ringRow, session: kind, at: wall(START_ms + ringRow * 50) });
+    recorder.take({ kind: "manifest", ringRow: 0, manifest: MANIFEST });
+    session(0, "lit");
+    session(40, "end");
+    for (let i = 0; i < 60; i++) publish(ring, make(i));
+    recorder.drain();
+    session(60, "lit");
+    for (let i = 60; i < 80; i++) publish(ring, make(i));
+    recorder.close();
+    const reader = openReader(folder);
+    expect(
+      reader
+        .sessions()
+        .map((s) => [s.kind, s.samples, s.started - START_ms, (s.ended ?? 0) - START_ms]),
+    ).toEqual([
+      ["lit", 40, 0, 2000],
+      ["dark", 20, 2000, 3000],
+      ["lit", 20, 3000, 9000],
+    ]);
+    reader.close();
+  });
+});
+
 describe("the latch", () => {
   test("keeps the first cause until reset, and tells that the bench was lit", () => {
     const { folder } = scratch;
