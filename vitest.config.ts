@@ -8,7 +8,6 @@ const process_ms = 120_000;
 export default defineConfig({
   test: {
     reporters: ["default", new ClosingLine()],
-    passWithNoTests: true,
     projects: [
       {
         test: {
