@@ -19,8 +19,12 @@ const vitest = (what, project, ...filters) =>
 const make = (what, folder, ...targets) =>
   existsSync(join(root, folder, "Makefile")) ? [run(what, "make", "-C", folder, ...targets)] : [];
 
-/** The one architecture test that compiles C; it belongs to the core's suite. */
-const OBJECT = "test/architecture/core-object.test.ts";
+/** Unit tests that compile C; they belong to the core's suite, so that the rest needs no compiler. */
+const COMPILING = [
+  "test/architecture/core-object.test.ts",
+  "test/unit/firmware-protocol/native-vectors.test.ts",
+];
+const withoutCompiling = COMPILING.flatMap((file) => ["--exclude", file]);
 const COMPILERS = ["gcc", "make"];
 const AVR = ["gcc-avr", "avr-libc", "binutils-avr", "libsimavr-dev", "libelf-dev"];
 
@@ -42,14 +46,14 @@ export const SUITES = [
     steps: () => [
       ...make("the core, natively", "firmware-protocol/c", "test"),
       ...make("the firmware", "firmware-protocol/boards/atmega328p"),
-      vitest("the core's object", "unit", OBJECT),
+      vitest("tests that compile the core", "unit", ...COMPILING),
     ],
   },
   {
     name: "unit",
     covers: "every room by itself, published values, architecture",
     needs: [],
-    steps: () => [vitest("unit tests", "unit", "--exclude", OBJECT)],
+    steps: () => [vitest("unit tests", "unit", ...withoutCompiling)],
   },
   {
     name: "process",
@@ -82,7 +86,7 @@ export const QUICK = [
     covers: "unit and architecture tests",
     needs: [],
     steps: () => [
-      vitest("unit tests", "unit", "test/unit", "test/architecture", "--exclude", OBJECT),
+      vitest("unit tests", "unit", "test/unit", "test/architecture", ...withoutCompiling),
     ],
   },
 ];
