@@ -18,7 +18,8 @@ export async function withLock(work, lock = LOCK) {
     const owner = ownerOf(lock);
     if (owner !== null && !isAlive(owner)) removeStale(lock, owner);
     else if (!told && owner !== null) {
-      say(`process ${owner} is installing or building here; waiting for it (${lock})`);
+      say(`process ${owner} is installing or building here; waiting for it`);
+      say(`if there is no such install or build, remove ${lock}`);
       told = true;
     }
     await pause(poll_ms);
