@@ -40,6 +40,19 @@ describe("introduction", () => {
     expect(bench.session.manifest).not.toBeNull();
   });
 
+  test("a reset on connect, as opening a port makes it on many boards, is one, and is asked past", () => {
+    const bench = new LinkBench();
+    bench.board.mute.add("who");
+    bench.connect();
+    bench.pass(300);
+    bench.board.mute.clear();
+    bench.board.reboot("banner");
+    bench.settle();
+    expect(bench.told("board-reset").map((f) => f.value)).toEqual([1]);
+    expect(bench.bodies("who")).toHaveLength(2);
+    expect(bench.session.manifest).not.toBeNull();
+  });
+
   test("asking ends after a count, says so, and a sign of a board starts it again", () => {
     const bench = new LinkBench();
     bench.up = false;
