@@ -50,7 +50,10 @@ export function DarkBlock(): VNode {
   const asked = darkAsked.value;
   return (
     <button type="button" class="bs-dark" onClick={askDark} aria-keyshortcuts="d">
-      Dark <small>{asked === undefined ? "or press d" : darkWords(asked).block}</small>
+      Dark{" "}
+      <small class={asked === undefined ? "bs-dark__key" : ""}>
+        {asked === undefined ? "or press d" : darkWords(asked).block}
+      </small>
     </button>
   );
 }

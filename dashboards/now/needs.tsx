@@ -1,9 +1,8 @@
 import type { VNode } from "preact";
-import { useState } from "preact/hooks";
 import type { Snapshot } from "../../daemon/desk/api.ts";
 import { ListMark } from "../picture/marks.tsx";
 import { type Need, needsOf, promise } from "../words/needs.ts";
-import { ask } from "./asking.ts";
+import { ResetVerb } from "./reset.tsx";
 
 /** What wants somebody, worst first, each with at most one verb. */
 export function Needs({ now, silence_ms }: { now: Snapshot; silence_ms: number }): VNode {
@@ -35,25 +34,6 @@ function NeedWords({ need }: { need: Need }): VNode {
       {need.words.slice(first.length)}
       {need.verb !== undefined && <ResetVerb {...need.verb} />}
     </p>
-  );
-}
-
-function ResetVerb({ text, cause }: { text: string; cause: string }): VNode {
-  const [refusal, setRefusal] = useState("");
-  const reset = async (): Promise<void> => {
-    const answer = await ask("/api/reset", { cause });
-    setRefusal(answer.ok ? "" : answer.words);
-  };
-  return (
-    <>
-      {" "}
-      <button type="button" class="bs-verb" onClick={reset}>
-        {text}
-      </button>
-      <span class="bs-refusal" role="status">
-        {refusal}
-      </span>
-    </>
   );
 }
 

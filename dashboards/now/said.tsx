@@ -2,8 +2,10 @@ import type { VNode } from "preact";
 import { useEffect, useRef, useState } from "preact/hooks";
 import type { Snapshot } from "../../daemon/desk/api.ts";
 import { amps } from "../words/format.ts";
+import { resetWords } from "../words/needs.ts";
 import { type Piece, pieces } from "../words/pieces.ts";
 import type { Sentences } from "../words/state.ts";
+import { ResetVerb } from "./reset.tsx";
 
 const CLASSES: Readonly<Record<Piece["kind"], string>> = {
   plain: "",
@@ -35,7 +37,12 @@ export function Said({ now, sentences }: { now: Snapshot; sentences: Sentences }
           );
         })}
       </h1>
-      <p class="bs-next">{next}</p>
+      <p class="bs-next">
+        {next}
+        {tripped && now.cause !== null && (
+          <ResetVerb text={resetWords(now.cause)} cause={now.cause.id} />
+        )}
+      </p>
     </div>
   );
 }

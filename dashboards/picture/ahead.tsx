@@ -39,7 +39,12 @@ export function Ahead({ scene }: { scene: Scene }): VNode {
   const { layout, now, stale } = scene;
   const forecast: Forecast = stale === "" ? forecastOf(scene.columns, now) : { kind: "none" };
   const middle = (scene.y(now.ceiling_mA ?? 0) + scene.y(now.floor_mA ?? scene.bounds.low)) / 2;
-  const why = stale === "" ? "no forecast yet" : "no forecast from old readings";
+  const why =
+    stale !== ""
+      ? "no forecast from old readings"
+      : now.state === "emitting"
+        ? "no forecast yet"
+        : "no forecast while dark";
   return (
     <g>
       {forecast.kind === "cap" && <UntilCap scene={scene} in_min={forecast.in_min} />}
@@ -66,7 +71,10 @@ export function Ahead({ scene }: { scene: Scene }): VNode {
   );
 }
 
-/** The ceiling comes down to what was asked; from there on the current would go with it. */
+/**
+ * The ceiling comes down to what was asked; from there on the current would go with it, and where to
+ * is not known: a paler opening without an edge.
+ */
 function UntilCap({ scene, in_min }: { scene: Scene; in_min: number }): VNode {
   const { layout, now, y } = scene;
   const x = linear(0, AHEAD_min, layout.g1, layout.width);
@@ -78,14 +86,16 @@ function UntilCap({ scene, in_min }: { scene: Scene; in_min: number }): VNode {
   const endY = y(ceiling + (asked - ceiling) * share);
   const floorY = y(now.floor_mA ?? scene.bounds.low);
   const [g1, end] = [layout.g1, x(end_min)];
+  const rest = layout.width - end;
   const text = `held, about ${clock(now.at + in_min * 60_000)}`;
   return (
     <g>
       <path class="bs-open" d={`M${g1} ${y(ceiling)}L${end} ${endY}V${floorY}H${g1}Z`} />
+      {rest > 0 && <rect class="bs-half" x={end} y={endY} width={rest} height={floorY - endY} />}
       <path class="bs-dotted" d={`M${g1} ${y(ceiling)}L${end} ${endY}`} />
       <path class="bs-dotted bs-dotted--current" d={`M${g1} ${y(asked)}H${end}`} />
       {isKnown(now.floor_mA) && (
-        <path class="bs-dotted bs-dotted--floor" d={`M${g1} ${floorY}H${end}`} />
+        <path class="bs-dotted bs-dotted--floor" d={`M${g1} ${floorY}H${layout.width}`} />
       )}
       {seen && <ExpectedMark x={end} y={y(asked)} />}
       {seen && !layout.phone && (

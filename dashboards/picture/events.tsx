@@ -30,26 +30,41 @@ export function eventWord(e: Pick<EventLine, "kind" | "hazard" | "words">): stri
 
 const CLASSES = { calm: "", warn: "bs-w", trip: "bs-r" } as const;
 
-/** Events as ticks through all strips, each with its mark at the foot and its words below. */
-export function Events({ scene }: { scene: Scene }): VNode {
-  const { events, axis, layout } = scene;
+/** Ticks of the events through all strips, and the short ones of plain times under the foot. */
+export function Ticks({ scene }: { scene: Scene }): VNode {
+  const { layout } = scene;
   const foot = layout.case[1] + 4;
-  const marked = events.filter((e) => e.kind !== "refused");
   return (
     <g>
-      {marked.map((e) => {
-        const x = Math.max(1, Math.round(xAt(axis, e.at)));
-        return (
-          <g key={e.id}>
-            <path class="bs-tick" d={`M${x} ${topAt(scene, x)}V${foot}`} />
-            <Mark x={x} y={foot} weight={e.weight} />
-          </g>
-        );
-      })}
-      <EventWords scene={scene} events={marked} />
+      {marked(scene).map((e) => (
+        <path
+          key={e.id}
+          class="bs-tick"
+          d={`M${tickX(scene, e)} ${topAt(scene, tickX(scene, e))}V${foot}`}
+        />
+      ))}
     </g>
   );
 }
+
+/** Marks at the feet of the ticks, and what they mean. */
+export function Events({ scene }: { scene: Scene }): VNode {
+  const foot = scene.layout.case[1] + 4;
+  return (
+    <g>
+      {marked(scene).map((e) => (
+        <Mark key={e.id} x={tickX(scene, e)} y={foot} weight={e.weight} />
+      ))}
+      <EventWords scene={scene} />
+    </g>
+  );
+}
+
+/** A refusal changed nothing on the bench; it is told to whoever asked, not to the picture. */
+const marked = ({ events }: Scene): readonly EventLine[] =>
+  events.filter((e) => e.kind !== "refused");
+
+const tickX = ({ axis }: Scene, e: EventLine): number => Math.max(5, Math.round(xAt(axis, e.at)));
 
 /** Where the ceiling stands at a pixel: ticks begin there, not in the solid above it. */
 function topAt({ columns, y, layout }: Scene, x: number): number {
@@ -58,49 +73,70 @@ function topAt({ columns, y, layout }: Scene, x: number): number {
   return Number.isFinite(ceiling) ? Math.round(y(ceiling)) : layout.top;
 }
 
+interface NamedTag extends Tag {
+  readonly class: string;
+  readonly isTime: boolean;
+}
+
+/** Light follows arming by some seconds; the pair needs one word. */
+const AFTER_ARMING_MS = 60_000;
+
+function eventTags({ axis, layout, events }: Scene): NamedTag[] {
+  const armed = events.filter((e) => e.kind === "armed");
+  const told = events.filter(
+    (e) =>
+      e.kind !== "emitting" || !armed.some((a) => e.at >= a.at && e.at - a.at < AFTER_ARMING_MS),
+  );
+  return told
+    .filter((e) => eventWord(e) !== "")
+    .map((e) => ({
+      x: xAt(axis, e.at),
+      text: layout.phone ? clock(e.at) : `${clock(e.at)} ${eventWord(e)}`,
+      rank: RANKS[e.weight],
+      class: CLASSES[e.weight],
+      isTime: false,
+    }));
+}
+
 /** Words of the events, and between them the plain time where nothing happened. */
-function EventWords({ scene, events }: { scene: Scene; events: readonly EventLine[] }): VNode {
-  const { axis, layout } = scene;
-  const tags: (Tag & { class: string })[] = events.map((e) => {
-    const word = eventWord(e);
-    const text = layout.phone || word === "" ? clock(e.at) : `${clock(e.at)} ${word}`;
-    const rank = word === "" ? 0 : RANKS[e.weight];
-    return { x: xAt(axis, e.at), text: word === "" ? "" : text, rank, class: CLASSES[e.weight] };
-  });
-  tags.push(...plainTimes(scene));
-  const named = tags.filter((tag) => tag.text !== "");
+function EventWords({ scene }: { scene: Scene }): VNode {
+  const { layout } = scene;
+  const tags = [...eventTags(scene), ...plainTimes(scene)];
   const within = {
     from: layout.margin,
     to: layout.g0 + (layout.phone ? 2 : 8),
     rows: layout.phone ? 1 : 2,
   };
+  const foot = layout.case[1];
   return (
     <g>
-      {placeTags(named, layout.small, within).map(({ left, row, index }) => (
-        <text
-          key={index}
-          class={named[index]?.class ?? ""}
-          x={left}
-          y={layout.words + row * (layout.small + 4)}
-        >
-          {named[index]?.text}
-        </text>
-      ))}
+      {placeTags(tags, layout.small, within).map(({ left, row, index }) => {
+        const tag = tags[index];
+        return tag === undefined ? null : (
+          <g key={`${tag.text} ${tag.x}`}>
+            {tag.isTime && <path class="bs-hair" d={`M${Math.round(tag.x)} ${foot}v7`} />}
+            <text class={tag.class} x={left} y={layout.words + row * (layout.small + 4)}>
+              {tag.text}
+            </text>
+          </g>
+        );
+      })}
     </g>
   );
 }
 
-/** Five-minute or rounder times, so far apart that they do not crowd. */
-function plainTimes({ axis, layout }: Scene): (Tag & { class: string })[] {
+/** Rounder times, so far apart that they do not crowd. */
+function plainTimes({ axis, layout }: Scene): NamedTag[] {
   const wanted_ms = (layout.phone ? 90 : 130) * axis.msPerPx;
-  const step =
-    [1, 2, 5, 10, 20].map((min) => min * 60_000).find((ms) => ms >= wanted_ms) ?? 1_200_000;
-  const out: (Tag & { class: string })[] = [];
-  const first = Math.ceil((axis.now - layout.g0 * axis.msPerPx) / step) * step;
-  for (let t = first; t < axis.now; t += step) {
+  const steps_ms = [1, 2, 5, 10, 20].map((min) => min * 60_000);
+  const step_ms = steps_ms.find((ms) => ms >= wanted_ms) ?? 1_200_000;
+  const out: NamedTag[] = [];
+  const first = Math.ceil((axis.now - layout.g0 * axis.msPerPx) / step_ms) * step_ms;
+  for (let t = first; t < axis.now; t += step_ms) {
     const x = xAt(axis, t);
-    if (x > layout.margin && x < layout.g0 - 50)
-      out.push({ x, text: clock(t), rank: 1, class: "" });
+    if (x > layout.margin && x < layout.g0 - 50) {
+      out.push({ x, text: clock(t), rank: 1, rows: 1, class: "", isTime: true });
+    }
   }
   return out;
 }

@@ -23,6 +23,8 @@ export interface Tag {
   readonly text: string;
   /** Higher ones are placed first and push others out. */
   readonly rank: number;
+  /** How many rows it may use; the second row is for events that would else be lost. */
+  readonly rows?: number;
 }
 
 export interface PlacedTag {
@@ -45,14 +47,16 @@ export function placeTags(
 ): PlacedTag[] {
   const taken: { from: number; to: number }[][] = Array.from({ length: within.rows }, () => []);
   const order = tags.map((tag, index) => ({ tag, index }));
-  order.sort((a, b) => b.tag.rank - a.tag.rank || b.tag.x - a.tag.x);
+  order.sort((a, b) => b.tag.rank - a.tag.rank || a.tag.x - b.tag.x);
   const placed: PlacedTag[] = [];
   for (const { tag, index } of order) {
     const width = widthOf(tag.text, size);
     if (width > within.to - within.from) continue;
     const left = Math.min(Math.max(tag.x - width / 2, within.from), within.to - width);
-    const row = taken.findIndex((row) =>
-      row.every(({ from, to }) => left > to + size || left + width < from - size),
+    const row = taken.findIndex(
+      (row, i) =>
+        i < (tag.rows ?? within.rows) &&
+        row.every(({ from, to }) => left > to + size || left + width < from - size),
     );
     if (row < 0) continue;
     taken[row]?.push({ from: left, to: left + width });

@@ -30,8 +30,8 @@ export function layoutFor(width: number, viewport: number): Layout {
   const small = wide ? 15 : 12.5;
   const gutter = phone ? 100 : wide ? 210 : 150;
   const g1 = phone ? width - 92 : Math.round(width * (1 - AHEAD));
-  const corridor = phone ? 246 : Math.max(210, Math.round(Math.min(viewport * 0.42, width * 0.28)));
-  const strip = phone ? 56 : Math.round(corridor * 0.26);
+  const corridor = phone ? 246 : Math.max(210, Math.round(Math.min(viewport * 0.37, width * 0.28)));
+  const strip = phone ? 56 : Math.round(corridor * 0.24);
   const gap = phone ? 24 : wide ? 42 : 34;
   const output0 = corridor + gap;
   const case0 = output0 + strip + gap * 0.8;

@@ -1,6 +1,7 @@
 import type { VNode } from "preact";
-import { amps } from "../words/format.ts";
+import { amps, clock } from "../words/format.ts";
 import { widthOf } from "./labels.ts";
+import { heldRuns } from "./past.tsx";
 import { runs } from "./path.ts";
 import { isLit, type Scene } from "./scene.ts";
 
@@ -9,6 +10,7 @@ export function Notes({ scene }: { scene: Scene }): VNode {
   return (
     <g>
       <Asked scene={scene} />
+      <HeldSince scene={scene} />
       <FloorName scene={scene} />
       <DarkName scene={scene} />
     </g>
@@ -30,7 +32,34 @@ function Asked({ scene }: { scene: Scene }): VNode {
         const x = Math.max(columns.x[from] ?? 0, 0) + (layout.phone ? 10 : 14);
         const fits = (columns.x[to - 1] ?? 0) - x > widthOf(text, layout.small) + 10;
         return fits ? (
-          <text key={columns.t[from]} class="bs-k" x={x} y={y(is) + layout.small + 8}>
+          <text key={columns.t[from]} class="bs-k bs-on-open" x={x} y={y(is) + layout.small + 8}>
+            {text}
+          </text>
+        ) : null;
+      })}
+    </g>
+  );
+}
+
+/** Since when the current is held down, under the coloured edge. */
+function HeldSince({ scene }: { scene: Scene }): VNode {
+  const { columns, y, layout } = scene;
+  return (
+    <g>
+      {heldRuns(scene).map(({ from, to }) => {
+        const text = layout.phone ? "held" : `held down from ${clock(columns.t[from] ?? 0)}`;
+        const width = widthOf(text, layout.small);
+        const x = columns.x[from] ?? 0;
+        const lowest = Math.min(
+          ...columns.ceiling.slice(from, Math.min(to, from + Math.ceil(width))),
+        );
+        return (columns.x[to - 1] ?? 0) - x > width ? (
+          <text
+            key={columns.t[from]}
+            class="bs-w bs-on-open"
+            x={x + 5}
+            y={y(lowest) + layout.small + 8}
+          >
             {text}
           </text>
         ) : null;
@@ -64,16 +93,16 @@ function DarkName({ scene }: { scene: Scene }): VNode | null {
   const { columns, y, layout, bounds } = scene;
   const isUnder = (i: number): true | undefined =>
     (columns.current[i] ?? Number.NaN) < Math.max(bounds.low, 20) ? true : undefined;
-  const text = bounds.low > 0 ? "dark, 0 A; the scale is broken here" : "dark, 0 A";
-  const words = layout.phone ? "dark, 0 A" : text;
-  const need = widthOf(words, layout.small) + 16;
-  const last = runs(columns.x.length, isUnder)
-    .filter(({ from, to }) => (columns.x[to - 1] ?? 0) - (columns.x[from] ?? 0) > need)
-    .pop();
+  const last = runs(columns.x.length, isUnder).pop();
   if (last === undefined) return null;
   const x = Math.max((columns.x[last.from] ?? 0) + 8, layout.margin);
-  return (
-    <text class="bs-k" x={x} y={y(bounds.low) - 7}>
+  const room = (columns.x[last.to - 1] ?? 0) - x;
+  const long = "dark, 0\u00a0A; the scale is broken here";
+  const words = [...(bounds.low > 0 ? [long] : []), "dark, 0\u00a0A"].find(
+    (text) => widthOf(text, layout.small) < room,
+  );
+  return words === undefined ? null : (
+    <text class="bs-k bs-on-solid" x={x} y={y(bounds.low) - 7}>
       {words}
     </text>
   );

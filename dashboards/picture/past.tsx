@@ -1,5 +1,5 @@
 import type { VNode } from "preact";
-import { amps, clock } from "../words/format.ts";
+import { amps } from "../words/format.ts";
 import { xAt } from "./columns.ts";
 import { widthOf } from "./labels.ts";
 import { Hatch, Mark } from "./marks.tsx";
@@ -28,7 +28,7 @@ export function Past({ scene }: { scene: Scene }): VNode {
 const xOf = (scene: Scene, i: number): number => scene.columns.x[i] ?? 0;
 
 /** Stretches in which the asked current lay above the ceiling while light was on. */
-function heldRuns({ columns }: Scene): Run[] {
+export function heldRuns({ columns }: Scene): Run[] {
   const held = (i: number): true | undefined =>
     isLit(columns.state[i] ?? 0) && (columns.asked[i] ?? 0) > (columns.ceiling[i] ?? 0) + 0.5
       ? true
@@ -36,26 +36,14 @@ function heldRuns({ columns }: Scene): Run[] {
   return runs(columns.x.length, held);
 }
 
-/** The coloured edge under a current that is held down, and since when. */
+/** The coloured edge under a current that is held down. */
 function Held({ scene }: { scene: Scene }): VNode {
-  const { columns, y, layout } = scene;
+  const { columns, y } = scene;
   return (
     <g>
       {heldRuns(scene).map(({ from, to }) => {
         const part = { x: columns.x.slice(from, to), v: columns.ceiling.slice(from, to) };
-        const text = layout.phone ? "held" : `held down from ${clock(columns.t[from] ?? 0)}`;
-        const wide = xOf(scene, to - 1) - xOf(scene, from) > widthOf(text, layout.small);
-        const below = y(Math.min(...part.v.slice(0, Math.ceil(widthOf(text, layout.small)))));
-        return (
-          <g key={from}>
-            <path class="bs-held" d={linePath(part, y)} />
-            {wide && (
-              <text class="bs-w bs-on-open" x={xOf(scene, from) + 5} y={below + layout.small + 12}>
-                {text}
-              </text>
-            )}
-          </g>
-        );
+        return <path key={from} class="bs-held" d={linePath(part, y)} />;
       })}
     </g>
   );

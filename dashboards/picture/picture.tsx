@@ -1,13 +1,13 @@
 import type { VNode } from "preact";
 import { useMemo } from "preact/hooks";
 import { Ahead } from "./ahead.tsx";
-import { Events } from "./events.tsx";
+import { Events, Ticks } from "./events.tsx";
 import { HatchPattern } from "./marks.tsx";
 import { Notes } from "./notes.tsx";
 import { Makers, Past } from "./past.tsx";
 import type { Scene } from "./scene.ts";
 import { Section } from "./section.tsx";
-import { CaseStrip, OutputStrip } from "./strips.tsx";
+import { CaseStrip, OutputStrip, StripNames } from "./strips.tsx";
 
 /**
  * The whole picture. What has happened is drawn anew only when it slides by a pixel or something
@@ -27,9 +27,11 @@ export function Picture(props: {
         <CaseStrip scene={scene} />
         <Past scene={scene} />
         <OutputStrip scene={scene} />
-        <Events scene={scene} />
+        <Ticks scene={scene} />
+        <StripNames scene={scene} />
         <Makers scene={scene} />
         <Notes scene={scene} />
+        <Events scene={scene} />
       </g>
     ),
     [pastKey],

@@ -24,7 +24,7 @@ export function needsOf(now: Snapshot, silence_ms: number): Need[] {
       key: "trip",
       weight: "trip",
       words: `${capital(now.cause.words)}, first cause, at ${clockWithSeconds(now.since)}.`,
-      verb: { text: `Reset, naming: ${now.cause.words}`, cause: now.cause.id },
+      verb: { text: resetWords(now.cause), cause: now.cause.id },
     });
   }
   if (silence_ms > 0) {
@@ -52,6 +52,10 @@ export function needsOf(now: Snapshot, silence_ms: number): Need[] {
   }
   return out.map((need) => ({ ...need, words: keepUnits(need.words) }));
 }
+
+/** A reset names what it clears, on its own button. */
+export const resetWords = (cause: { readonly words: string }): string =>
+  `Reset, naming: ${cause.words}`;
 
 const seconds = (ms: number): string => `${(ms / 1000).toFixed(2)}\u00a0s`;
 

@@ -3,7 +3,7 @@ import { type Browser, type BrowserContext, chromium, type Page } from "playwrig
 import { packageRoot } from "../../daemon/paths.ts";
 
 /** Debian's Chromium; another one is named in the environment. */
-const EXECUTABLE = process.env["BEAMSITTER_CHROMIUM"] ?? "/usr/bin/chromium";
+const EXECUTABLE = process.env.BEAMSITTER_CHROMIUM ?? "/usr/bin/chromium";
 const FLAGS = [
   "--headless",
   "--no-sandbox",

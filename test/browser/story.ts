@@ -31,7 +31,7 @@ const ripple = (n: number): number => {
 function askedAt(kind: Kind, minute: number): number {
   if (kind === "standby" || minute < 0.1) return 0;
   if (kind === "calm") return 1450;
-  if (kind === "near" && minute >= 30.5) return 1640;
+  if (kind === "near" && minute >= 30.5) return 1580;
   if (kind === "tripped" && minute >= 33.4) return 0;
   return 1800;
 }
@@ -76,8 +76,8 @@ export function evening(kind: Kind, at: number): Moment[] {
 
 const WORDS: Readonly<Record<Kind, readonly [string, string]>> = {
   near: [
-    "north is emitting 1.64 A as asked; 322 mW leave at 1064 nm. The ceiling is 0.05 A above and coming down, threshold 0.79 A below.",
-    "Next: the ceiling comes down to 1.64 A in about 13 min, and the current is then held down.",
+    "north is emitting 1.58 A as asked; 322 mW leave at 1064 nm.",
+    "Next: the ceiling comes down to 1.58 A in about 13 min, and the current is then held down.",
   ],
   held: [
     "north is emitting 1.61 A, held down from 1.80 A by its ceiling, the derating for the case. 300 mW leave at 1064 nm.",
@@ -127,7 +127,9 @@ export function snapshotOf(kind: Kind, at: number): Snapshot {
     timeToCap_s: kind === "near" ? 780 : null,
     cause: tripped ? { code: 17, id: "loop-open", words: "the interlock loop opened" } : null,
     since: tripped ? at - 6.6 * 60_000 : at - 30 * 60_000,
-    sentence: sentence.replace(/1\.\d\d A(?= as asked|, held)/, shown),
+    sentence: sentence
+      .replace(/1\.\d\d A(?= as asked|, held)/, shown)
+      .replace(/\d+ mW/, `${m.output.toFixed(0)} mW`),
     next,
     warnings:
       kind === "near"
@@ -179,7 +181,7 @@ export function eventsOf(kind: Kind, at: number): EventLine[] {
     out.push(line(3, heldFrom(kind, at), "capped", "warn", "Held down from 1.80 A."));
   }
   if (kind === "near") {
-    out.push(line(4, 30.5, "set", "calm", "1.64 A set by a page."));
+    out.push(line(4, 30.5, "set", "calm", "1.58 A set by a page."));
     out.push(line(5, 33.6, "warning", "warn", "Output stepped down.", "output-low"));
   }
   if (kind === "tripped") {
