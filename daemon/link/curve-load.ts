@@ -11,11 +11,11 @@ import type { LinkQueue } from "./queue.ts";
 import { Waiter } from "./waiter.ts";
 
 /** Answer to a host line: 200 ms by contract, and as much again for the buffers on the way. */
-export const ANSWER_MS = 500;
+export const ANSWER_ms = 500;
 /** Whole loads tried before giving up; a lost answer costs one. */
 export const CURVE_TRIES = 3;
 /** Pause between two loads. */
-export const CURVE_PAUSE_MS = 1000;
+export const CURVE_PAUSE_ms = 1000;
 
 /** What is wrong with a table before any of it is sent; null where nothing is. */
 const faultOf = ({ x, y }: CurvePoints, absolute_counts: number): string | null => {
@@ -128,7 +128,7 @@ export class CurveLoad {
 
   private ask(step: Step, body: string): void {
     this.step = step;
-    this.waiter.begin(step, ANSWER_MS);
+    this.waiter.begin(step, ANSWER_ms);
     this.queue.send(seal(body), "plain");
   }
 
@@ -165,7 +165,7 @@ export class CurveLoad {
     const at = this.step;
     if (this.tries < CURVE_TRIES) {
       this.step = "pause";
-      this.waiter.begin("pause", CURVE_PAUSE_MS);
+      this.waiter.begin("pause", CURVE_PAUSE_ms);
       return;
     }
     this.abandon();

@@ -4,7 +4,7 @@ import type { LinkQueue } from "./queue.ts";
 import { Waiter } from "./waiter.ts";
 
 /** Pause between two darks while no sample comes that could carry the repeat. */
-export const DARK_PAUSE_MS = 100;
+export const DARK_PAUSE_ms = 100;
 /** Repeats without a sample before that is told; samples go on repeating it after that. */
 export const DARK_REPEATS_MAX = 50;
 
@@ -70,7 +70,7 @@ export class DarkOrder {
 
   private send(): void {
     this.queue.purge("dark");
-    this.waiter.begin("dark", DARK_PAUSE_MS);
+    this.waiter.begin("dark", DARK_PAUSE_ms);
     this.queue.send(seal(`>dark ${this.code}`), "dark");
   }
 }

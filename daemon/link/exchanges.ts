@@ -3,7 +3,7 @@ import { seal } from "../../firmware-protocol/line.ts";
 import type { FieldsOf } from "../../firmware-protocol/messages.ts";
 import { reasonCode, reasonWords } from "../../firmware-protocol/reasons.ts";
 import type { Manifest } from "../model/manifest.ts";
-import { ANSWER_MS } from "./curve-load.ts";
+import { ANSWER_ms } from "./curve-load.ts";
 import type { LinkQueue } from "./queue.ts";
 import { Waiter } from "./waiter.ts";
 
@@ -41,24 +41,24 @@ export class Exchanges {
 
   arm(): void {
     this.token = null;
-    this.arming.begin("ask", ANSWER_MS);
+    this.arming.begin("ask", ANSWER_ms);
     this.queue.send(seal(">ask arm"), "light");
   }
 
   reset(cause: number): void {
-    this.resetting.begin("reset", ANSWER_MS);
+    this.resetting.begin("reset", ANSWER_ms);
     this.queue.send(seal(`>reset ${cause}`), "plain");
   }
 
   status(): void {
-    this.counting.begin("status", ANSWER_MS);
+    this.counting.begin("status", ANSWER_ms);
     this.queue.send(seal(">status"), "plain");
   }
 
   /** The board offered a number: the answer to it, or null where nobody asked for one. */
   offer(offer: FieldsOf<"offer">, manifest: Manifest, curveCrc: string): number | null {
     if (offer.purpose !== "arm" || this.arming.verb !== "ask") return null;
-    this.arming.begin("arm", ANSWER_MS);
+    this.arming.begin("arm", ANSWER_ms);
     return armAnswer({
       number: offer.number,
       boot: offer.boot,

@@ -6,9 +6,9 @@ import type { LinkQueue } from "./queue.ts";
 import { Waiter } from "./waiter.ts";
 
 /** A whole introduction comes within this; 64 channels at 115200 baud take 0.4 s. */
-export const INTRODUCTION_MS = 1500;
+export const INTRODUCTION_ms = 1500;
 /** Pause before a board is asked again: a boot loader may be listening meanwhile. */
-export const WHO_PAUSE_MS = 500;
+export const WHO_PAUSE_ms = 500;
 /** Times a board is asked before the link gives up: ten seconds and more, longer than it boots. */
 export const WHO_TRIES = 8;
 
@@ -102,7 +102,7 @@ export class Introduction {
     this.tries += 1;
     this.step = "waiting";
     this.reader.clear();
-    this.waiter.begin("who", INTRODUCTION_MS);
+    this.waiter.begin("who", INTRODUCTION_ms);
     this.queue.send(seal(`>who ${PROTOCOL_VERSION}`), "plain");
   }
 
@@ -110,7 +110,7 @@ export class Introduction {
   private again(): IntroductionResult {
     if (this.tries < WHO_TRIES) {
       this.step = "pausing";
-      this.waiter.begin("pause", WHO_PAUSE_MS);
+      this.waiter.begin("pause", WHO_PAUSE_ms);
       return "nothing";
     }
     this.stop();

@@ -3,9 +3,9 @@ import type { LinkQueue } from "./queue.ts";
 /** Sample periods without a good line that are told as silence. */
 export const SILENT_PERIODS = 3;
 /** Shorter silences are the host's own scheduling, at any sample rate. */
-export const SILENCE_MS_MIN = 50;
+export const SILENCE_ms_MIN = 50;
 /** Broken lines are told at most once in this time, with how many there were. */
-export const GARBLED_PAUSE_MS = 1000;
+export const GARBLED_PAUSE_ms = 1000;
 
 /** Tells when good lines stop and come again, and how many broken ones came. */
 export class Silence {
@@ -31,7 +31,7 @@ export class Silence {
 
   /** From now on samples are expected at that rate. */
   expect(rate_perS: number, now: number): void {
-    this.limit_ms = Math.max(SILENCE_MS_MIN, (SILENT_PERIODS * 1000) / rate_perS);
+    this.limit_ms = Math.max(SILENCE_ms_MIN, (SILENT_PERIODS * 1000) / rate_perS);
     this.last_ms = now;
     this.silent = false;
   }
@@ -57,11 +57,11 @@ export class Silence {
 
   next(): number {
     const quiet = this.silent ? Number.POSITIVE_INFINITY : this.last_ms + this.limit_ms;
-    return this.bad > 0 ? Math.min(quiet, this.badTold_ms + GARBLED_PAUSE_MS) : quiet;
+    return this.bad > 0 ? Math.min(quiet, this.badTold_ms + GARBLED_PAUSE_ms) : quiet;
   }
 
   private tellBad(now: number): void {
-    if (now < this.badTold_ms + GARBLED_PAUSE_MS) return;
+    if (now < this.badTold_ms + GARBLED_PAUSE_ms) return;
     this.queue.fact("garbled", this.bad, this.badKind);
     this.bad = 0;
     this.badTold_ms = now;

@@ -1,11 +1,11 @@
 /** Length of a window of which the sample with the least delay is kept, ms of the board's clock. */
-export const WINDOW_MS = 1000;
+export const WINDOW_ms = 1000;
 /** Windows that the line is fitted to. */
 export const WINDOWS = 16;
 /** Fewer windows tell no drift: jitter of a few milliseconds would look like one. */
 export const WINDOWS_MIN = 4;
 /** A sample this much earlier than the line allows means that the board's clock jumped ahead. */
-export const JUMP_MS = 20;
+export const JUMP_ms = 20;
 const PAIRS = (WINDOWS * (WINDOWS - 1)) / 2;
 
 /**
@@ -50,9 +50,9 @@ export class TickClock {
     const offset = received_ms - board_ms;
     this.jump_ms = 0;
     if (!this.started) this.begin(board_ms, offset);
-    if (board_ms - this.window_ms >= WINDOW_MS) this.closeWindow(board_ms, offset);
+    if (board_ms - this.window_ms >= WINDOW_ms) this.closeWindow(board_ms, offset);
     const late = offset - this.predicted(board_ms);
-    if (this.settled && late < -JUMP_MS) {
+    if (this.settled && late < -JUMP_ms) {
       this.jump_ms = -late;
       this.restart();
       this.begin(board_ms, offset);

@@ -1,8 +1,8 @@
 import type { Transport, TransportHandlers } from "./transport.ts";
 
 /** First pause before another connection is tried; doubled each time, up to the longest. */
-export const PAUSE_MS_MIN = 250;
-export const PAUSE_MS_MAX = 10_000;
+export const PAUSE_ms_MIN = 250;
+export const PAUSE_ms_MAX = 10_000;
 /** Tries without one received line before it ends: about a day of the longest pause. */
 export const TRIES_MAX = 8640;
 
@@ -122,7 +122,7 @@ export class Reconnect {
     if (this.tries >= TRIES_MAX) this.state = "ended";
     else {
       this.state = "pausing";
-      this.pause_ms = Math.min(PAUSE_MS_MAX, Math.max(PAUSE_MS_MIN, this.pause_ms * 2));
+      this.pause_ms = Math.min(PAUSE_ms_MAX, Math.max(PAUSE_ms_MIN, this.pause_ms * 2));
       this.callOff = this.later(this.pause_ms, () => this.connect());
     }
     if (wasOpen) this.handlers.closed(why);

@@ -5,7 +5,7 @@ import { Once } from "./once.ts";
 import { openFailureWords } from "./serial-words.ts";
 import { SilenceWatch, silenceWords } from "./silence-watch.ts";
 import {
-  SILENCE_MS,
+  SILENCE_ms,
   type Transport,
   type TransportHandlers,
   WAITING_BYTES_MAX,
@@ -35,7 +35,7 @@ export class SerialTransport implements Transport {
   private unsent = false;
   private draining = false;
 
-  constructor({ path, baud, silence_ms = SILENCE_MS }: SerialOptions) {
+  constructor({ path, baud, silence_ms = SILENCE_ms }: SerialOptions) {
     this.name = `${path} at ${baud} baud`;
     this.silence_ms = silence_ms;
     // The lock keeps other programs that ask for one off the port; a second host is refused by it.

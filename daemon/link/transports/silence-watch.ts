@@ -1,4 +1,4 @@
-import { SILENCE_LOOK_MS } from "./transport.ts";
+import { SILENCE_LOOK_ms } from "./transport.ts";
 
 /**
  * Ends a connection on which nothing comes any more. Ports that were unplugged do not always say
@@ -18,7 +18,7 @@ export class SilenceWatch {
         this.stop();
         silent(quiet);
       },
-      Math.min(SILENCE_LOOK_MS, limit_ms / 4),
+      Math.min(SILENCE_LOOK_ms, limit_ms / 4),
     );
   }
 

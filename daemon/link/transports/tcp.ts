@@ -3,7 +3,7 @@ import { LineSplitter } from "./lines.ts";
 import { Once } from "./once.ts";
 import { SilenceWatch, silenceWords } from "./silence-watch.ts";
 import {
-  SILENCE_MS,
+  SILENCE_ms,
   type Transport,
   type TransportHandlers,
   WAITING_BYTES_MAX,
@@ -46,7 +46,7 @@ export class TcpTransport implements Transport {
   constructor(options: TcpOptions) {
     this.name = `${options.host}, port ${options.port}`;
     this.options = options;
-    this.silence_ms = options.silence_ms ?? SILENCE_MS;
+    this.silence_ms = options.silence_ms ?? SILENCE_ms;
   }
 
   open(handlers: TransportHandlers): void {

@@ -34,8 +34,8 @@ export interface BuiltInBench {
 }
 
 /** Longest silence of an open connection before it is given up: boards send ten lines a second. */
-export const SILENCE_MS = 4000;
+export const SILENCE_ms = 4000;
 /** How often silence is looked for. */
-export const SILENCE_LOOK_MS = 250;
+export const SILENCE_LOOK_ms = 250;
 /** Bytes waiting to be sent beyond which a line is dropped: a stuck port must not collect orders. */
 export const WAITING_BYTES_MAX = 4096;

@@ -2,7 +2,7 @@ import fc from "fast-check";
 import { describe, expect, test } from "vitest";
 import { BAD_LINES_KEPT, LINES_KEPT, RawLog } from "../../../daemon/link/rawlog.ts";
 import { Sequence } from "../../../daemon/link/sequence.ts";
-import { JUMP_MS, TickClock, WINDOW_MS } from "../../../daemon/link/tick-clock.ts";
+import { JUMP_ms, TickClock, WINDOW_ms } from "../../../daemon/link/tick-clock.ts";
 import { seal } from "../../../firmware-protocol/line.ts";
 import { LinkBench } from "./bench.ts";
 
@@ -117,7 +117,7 @@ describe("the board's clock against the host's", () => {
     for (let n = 0; n < 20; n += 1) clock.sample(n * 20, 500 + n * 20);
     clock.sample(400, 402);
     expect(clock.jump_ms).toBe(0);
-    expect(JUMP_MS).toBeLessThan(WINDOW_MS);
+    expect(JUMP_ms).toBeLessThan(WINDOW_ms);
   });
 
   test("a tick maps to the moment its line would have come at best", () => {

@@ -1,7 +1,7 @@
 import { describe, expect, test } from "vitest";
 import {
-  PAUSE_MS_MAX,
-  PAUSE_MS_MIN,
+  PAUSE_ms_MAX,
+  PAUSE_ms_MIN,
   Reconnect,
   TRIES_MAX,
 } from "../../../daemon/link/transports/reconnect.ts";
@@ -101,14 +101,14 @@ describe("reconnecting", () => {
       b.newest().handlers.closed("silent");
       b.turn();
     }
-    expect(b.pauses.slice(1, 5)).toEqual([PAUSE_MS_MIN, 500, 1000, 2000]);
-    expect(Math.max(...b.pauses)).toBe(PAUSE_MS_MAX);
+    expect(b.pauses.slice(1, 5)).toEqual([PAUSE_ms_MIN, 500, 1000, 2000]);
+    expect(Math.max(...b.pauses)).toBe(PAUSE_ms_MAX);
     b.newest().handlers.opened();
     expect(b.link.status.tries).toBe(9);
     b.newest().handlers.line("<say hello");
     expect(b.link.status.tries).toBe(0);
     b.newest().handlers.closed("unplugged");
-    expect(b.pauses.at(-1)).toBe(PAUSE_MS_MIN);
+    expect(b.pauses.at(-1)).toBe(PAUSE_ms_MIN);
   });
 
   test("it ends after a count, and says so", () => {
