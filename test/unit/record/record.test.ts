@@ -149,6 +149,28 @@ describe("reading while it is written", () => {
     reader.close();
   });
 
+  test("a civil clock put forward by an hour begins a block that is found", async () => {
+    const { folder } = scratch;
+    const HOUR_ms = 3_600_000;
+    const make = rowMaker(9, every50ms);
+    recordRows(
+      folder,
+      (i) => {
+        const row = make(i);
+        if (i >= 100) row[ROW.wall_ms] = (row[ROW.wall_ms] as number) + HOUR_ms;
+        return row;
+      },
+      200,
+    );
+    const reader = openReader(folder);
+    const window = { from: wall(START_ms + HOUR_ms + 4000), to: wall(START_ms + HOUR_ms + 9900) };
+    const query = { bench: "north", channels: ["current"], window, pixels: 500 };
+    const { channels, gaps } = await reader.series(query);
+    expect(channels.current?.t).toHaveLength(98);
+    expect(gaps).toEqual([{ from: window.from, to: START_ms + HOUR_ms + 5000 }]);
+    reader.close();
+  });
+
   test("samples between two sessions get one of their own, and every session an end", () => {
     const { folder } = scratch;
     const { ring, recorder } = recording(folder, 2000, { wall_ms: () => START_ms + 9000 });
