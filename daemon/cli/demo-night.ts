@@ -123,7 +123,6 @@ class Night {
       ring: this.#ring.memory,
       // A simulated night is not evidence: it need not outlive a power cut.
       durability: "none",
-      now_ms: () => lockstep.elapsed_ms,
       wall_ms: () => lockstep.wall(),
     });
     this.#loop = new Loop(
