@@ -4,18 +4,13 @@ import { crc16Text, hex16 } from "./crc.ts";
 export const LINE_BYTES_MAX = 160;
 /** Space and four digits that close a line. */
 const TAIL_BYTES = 5;
-/** Longest verb of the grammar. */
-export const VERB_LETTERS_MAX = 12;
 
 /** Who receives a line. */
 export type Side = "controller" | "host";
 
 /** Ways a line can be broken, in the order in which they are judged: the first that fits names it. */
-export const BROKEN_KINDS = ["empty", "long", "char", "direction", "crc", "verb", "form"] as const;
+const BROKEN_KINDS = ["empty", "long", "char", "direction", "crc", "verb", "form"] as const;
 export type BrokenKind = (typeof BROKEN_KINDS)[number];
-
-/** First character of the lines a side receives. */
-export const directionTo = (side: Side): ">" | "<" => (side === "controller" ? ">" : "<");
 
 /** A line whose checksum fits, cut at its spaces. Whether verb and fields make sense is not judged. */
 export interface Frame {

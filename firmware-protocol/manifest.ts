@@ -4,7 +4,7 @@ import { bodyOf, LINE_BYTES_MAX } from "./line.ts";
 import { type FieldsOf, readLine } from "./messages.ts";
 
 /** Channels that a judge cannot do without; all of them stand in group 0. */
-export const REQUIRED_CHANNELS = ["set", "current", "case", "photodiode"] as const;
+const REQUIRED_CHANNELS = ["set", "current", "case", "photodiode"] as const;
 
 /** A manifest, or everything that is wrong with the introduction. */
 export type ManifestResult =

@@ -44,7 +44,7 @@ const bySchema = <S extends z.ZodType>(
 const orderedCause = u8.refine((n) => n === 0 || (n >= 64 && n <= 254));
 
 const PURPOSES = ["arm", "inject"] as const;
-export const BOOT_CAUSES = ["power", "brown-out", "watchdog", "external", "unknown"] as const;
+const BOOT_CAUSES = ["power", "brown-out", "watchdog", "external", "unknown"] as const;
 const MOVES = ["open", "close"] as const;
 
 const toController = {

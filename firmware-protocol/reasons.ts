@@ -32,7 +32,7 @@ export type Reason = (typeof REASONS)[number];
 export const reasonCode = (text: string): number => (REASONS as readonly string[]).indexOf(text);
 
 /** Each reason in words, to follow "refused: ". */
-export const REASON_WORDS: Readonly<Record<Reason, string>> = {
+const REASON_WORDS: Readonly<Record<Reason, string>> = {
   state: "the board is in a state where that is not possible",
   version: "the board speaks another version of the protocol",
   session: "the session named is not the open one",

@@ -44,3 +44,7 @@ export const newCounts = (): LinkCounts => ({
   verb: 0,
   form: 0,
 });
+
+/** Lines that came and could not be used, of every kind. */
+export const brokenLines = (counts: LinkCounts): number =>
+  counts.crc + counts.char + counts.long + counts.verb + counts.form + counts.direction;

@@ -15,7 +15,7 @@ export const ANSWER_ms = 500;
 /** Whole loads tried before giving up; a lost answer costs one. */
 export const CURVE_TRIES = 3;
 /** Pause between two loads. */
-export const CURVE_PAUSE_ms = 1000;
+const CURVE_PAUSE_ms = 1000;
 
 /** What is wrong with a table before any of it is sent; null where nothing is. */
 const faultOf = ({ x, y }: CurvePoints, absolute_counts: number): string | null => {

@@ -4,9 +4,9 @@ import type { LinkQueue } from "./queue.ts";
 import { Waiter } from "./waiter.ts";
 
 /** Pause between two darks while no sample comes that could carry the repeat. */
-export const DARK_PAUSE_ms = 100;
+const DARK_PAUSE_ms = 100;
 /** Repeats without a sample before that is told; samples go on repeating it after that. */
-export const DARK_REPEATS_MAX = 50;
+const DARK_REPEATS_MAX = 50;
 
 const LIT = STATUS.emitting | STATUS.armed;
 

@@ -6,9 +6,9 @@ import type { LinkQueue } from "./queue.ts";
 import { Waiter } from "./waiter.ts";
 
 /** A whole introduction comes within this; 64 channels at 115200 baud take 0.4 s. */
-export const INTRODUCTION_ms = 1500;
+const INTRODUCTION_ms = 1500;
 /** Pause before a board is asked again: a boot loader may be listening meanwhile. */
-export const WHO_PAUSE_ms = 500;
+const WHO_PAUSE_ms = 500;
 /** Times a board is asked before the link gives up: ten seconds and more, longer than it boots. */
 export const WHO_TRIES = 8;
 

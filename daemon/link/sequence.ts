@@ -1,9 +1,9 @@
 import { counterDistance } from "../model/times.ts";
 
 /** A late sample can be this many numbers old; more than that is a board that started anew. */
-export const REORDER_MAX = 64;
+const REORDER_MAX = 64;
 /** More numbers than this cannot be lost in one go: half an hour at 1000 samples a second. */
-export const LOST_MAX = 1_800_000;
+const LOST_MAX = 1_800_000;
 
 export type Order = "first" | "next" | "duplicate" | "reordered" | "restarted";
 

@@ -1,11 +1,11 @@
 import type { LinkQueue } from "./queue.ts";
 
 /** Sample periods without a good line that are told as silence. */
-export const SILENT_PERIODS = 3;
+const SILENT_PERIODS = 3;
 /** Shorter silences are the host's own scheduling, at any sample rate. */
-export const SILENCE_ms_MIN = 50;
+const SILENCE_ms_MIN = 50;
 /** Broken lines are told at most once in this time, with how many there were. */
-export const GARBLED_PAUSE_ms = 1000;
+const GARBLED_PAUSE_ms = 1000;
 
 /** Tells when good lines stop and come again, and how many broken ones came. */
 export class Silence {

@@ -1,9 +1,9 @@
 /** Length of a window of which the sample with the least delay is kept, ms of the board's clock. */
 export const WINDOW_ms = 1000;
 /** Windows that the line is fitted to. */
-export const WINDOWS = 16;
+const WINDOWS = 16;
 /** Fewer windows tell no drift: jitter of a few milliseconds would look like one. */
-export const WINDOWS_MIN = 4;
+const WINDOWS_MIN = 4;
 /** A sample this much earlier than the line allows means that the board's clock jumped ahead. */
 export const JUMP_ms = 20;
 const PAIRS = (WINDOWS * (WINDOWS - 1)) / 2;

@@ -82,6 +82,16 @@ export class Reconnect {
     }
   }
 
+  /**
+   * What stands in the way, in sentences; empty while lines come, and before the first try has
+   * failed. The reason stays while the next try is under way.
+   */
+  trouble(): string {
+    if (this.state === "pausing" || this.state === "ended") return this.words();
+    if (this.why === "" || this.tries === 0) return "";
+    return `${this.why} Try ${this.tries} is under way.`;
+  }
+
   /** Ends the connection, for good and without a word to the handlers. */
   close(): void {
     this.callOff();
@@ -118,7 +128,7 @@ export class Reconnect {
   private closed(why: string): void {
     const wasOpen = this.state === "open";
     this.transport = null;
-    this.why = why;
+    this.why = /[.!?]$/.test(why) ? why : `${why}.`;
     if (this.tries >= TRIES_MAX) this.state = "ended";
     else {
       this.state = "pausing";
