@@ -19,12 +19,14 @@ export function takeCorridor(plan: Plan, state: State): void {
   if (inside) {
     state.case_degC = tables.case_degC[entry] as number;
     state.ceiling_mA = tables.ceiling_mA[entry] as number;
+    state.cap_counts = tables.cap_counts[entry] as number;
     state.maker = tables.maker[entry] as number;
     state.floor_mA = tables.floor_mA[entry] as number;
     state.expected_mW = expectedOutput_mW(plan.output, state.current_mA, state.case_degC);
   } else {
     state.case_degC = Number.NaN;
     state.ceiling_mA = 0;
+    state.cap_counts = 0;
     state.maker = DERATING;
     state.floor_mA = Number.NaN;
     state.expected_mW = Number.NaN;

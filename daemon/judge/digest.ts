@@ -1,71 +1,77 @@
-import type { Out, View } from "./records.ts";
+import { EVENTS_PER_STEP_MAX, type Out, type View } from "./records.ts";
 
 /**
  * A cheap 32-bit digest of what steps order and tell, so that two runs can be compared by one
  * number. It finds accidents, not attacks.
  */
-const cell = new Float64Array(1);
-const halves = new Uint32Array(cell.buffer);
 
-/** Constants of 32-bit FNV-1a, used here on whole words. */
+/** Numbers of an outcome beside its events, and of one event. */
+const OUT_NUMBERS = 33;
+const EVENT_NUMBERS = 4;
+const cells = new Float64Array(OUT_NUMBERS + EVENT_NUMBERS * EVENTS_PER_STEP_MAX);
+const words = new Uint32Array(cells.buffer);
+
+/** Start value and prime of 32-bit FNV-1a, used here on whole words. */
 export const DIGEST_START = 0x811c9dc5 | 0;
 const PRIME = 0x01000193;
 
-function mix(hash: number): number {
-  const low = Math.imul(hash ^ (halves[0] as number), PRIME);
-  const high = Math.imul(low ^ (low >>> 15) ^ (halves[1] as number), PRIME);
-  return high ^ (high >>> 13);
-}
-
-/** Every NaN counts as the same one: their bits may differ between two runs of one program. */
-function mixNumber(hash: number, value: number): number {
-  cell[0] = Number.isNaN(value) ? Number.MAX_VALUE : value;
-  return mix(hash);
-}
-
-/** `hash` with one outcome mixed in; begin with DIGEST_START. */
+/** `hash` with one outcome mixed in; begin with DIGEST_START. Allocates nothing. */
 export function mixOut(hash: number, out: Out): number {
-  let h = mixNumber(hash, out.dark);
-  h = mixNumber(h, out.permit);
-  h = mixNumber(h, out.permitSeq);
-  h = mixNumber(h, out.cap_counts);
-  h = mixNumber(h, out.aim_counts);
-  h = mixNumber(h, out.term_ticks);
-  h = mixNumber(h, out.order);
-  h = mixNumber(h, out.orderValue);
-  h = mixNumber(h, out.answer);
-  h = mixNumber(h, out.answerId);
-  h = mixNumber(h, out.refusal);
-  h = mixNumber(h, out.answerValue);
-  h = mixNumber(h, out.deadline_ms);
-  h = mixNumber(h, out.eventCount);
+  writeOrders(out);
+  writeView(out.view);
+  let used = OUT_NUMBERS;
   for (let i = 0; i < out.eventCount; i++) {
-    h = mixNumber(h, out.eventKind[i] as number);
-    h = mixNumber(h, out.eventHazard[i] as number);
-    h = mixNumber(h, out.eventA[i] as number);
-    h = mixNumber(h, out.eventB[i] as number);
+    cells[used++] = out.eventKind[i] as number;
+    cells[used++] = out.eventHazard[i] as number;
+    cells[used++] = out.eventA[i] as number;
+    cells[used++] = out.eventB[i] as number;
   }
-  return mixView(h, out.view);
+  let h = hash;
+  for (let i = 0; i < used; i++) {
+    // Every NaN counts as the same one: their bits may differ between two runs of one program.
+    if (Number.isNaN(cells[i] as number)) cells[i] = Number.MAX_VALUE;
+    h = Math.imul(h ^ (words[2 * i] as number), PRIME);
+    h = Math.imul(h ^ (h >>> 15) ^ (words[2 * i + 1] as number), PRIME);
+    h ^= h >>> 13;
+  }
+  return h;
 }
 
-function mixView(hash: number, view: View): number {
-  let h = mixNumber(hash, view.state);
-  h = mixNumber(h, view.flags);
-  h = mixNumber(h, view.cause);
-  h = mixNumber(h, view.asked_mA);
-  h = mixNumber(h, view.aim_mA);
-  h = mixNumber(h, view.current_mA);
-  h = mixNumber(h, view.case_degC);
-  h = mixNumber(h, view.output_mW);
-  h = mixNumber(h, view.ceiling_mA);
-  h = mixNumber(h, view.maker);
-  h = mixNumber(h, view.floor_mA);
-  h = mixNumber(h, view.margin_mA);
-  h = mixNumber(h, view.headroom_mA);
-  h = mixNumber(h, view.expected_mW);
-  h = mixNumber(h, view.caseSlope_KperS);
-  h = mixNumber(h, view.timeToCap_s);
-  h = mixNumber(h, view.delayLeft_ms);
-  h = mixNumber(h, view.loopDelay_ms);
-  return mixNumber(h, view.loopDelayWorst_ms);
+function writeOrders(out: Out): void {
+  cells[0] = out.dark;
+  cells[1] = out.permit;
+  cells[2] = out.permitSeq;
+  cells[3] = out.cap_counts;
+  cells[4] = out.aim_counts;
+  cells[5] = out.term_ticks;
+  cells[6] = out.order;
+  cells[7] = out.orderValue;
+  cells[8] = out.answer;
+  cells[9] = out.answerId;
+  cells[10] = out.refusal;
+  cells[11] = out.answerValue;
+  cells[12] = out.deadline_ms;
+  cells[13] = out.eventCount;
+}
+
+function writeView(view: View): void {
+  cells[14] = view.state;
+  cells[15] = view.flags;
+  cells[16] = view.cause;
+  cells[17] = view.asked_mA;
+  cells[18] = view.aim_mA;
+  cells[19] = view.current_mA;
+  cells[20] = view.case_degC;
+  cells[21] = view.output_mW;
+  cells[22] = view.ceiling_mA;
+  cells[23] = view.maker;
+  cells[24] = view.floor_mA;
+  cells[25] = view.margin_mA;
+  cells[26] = view.headroom_mA;
+  cells[27] = view.expected_mW;
+  cells[28] = view.caseSlope_KperS;
+  cells[29] = view.timeToCap_s;
+  cells[30] = view.delayLeft_ms;
+  cells[31] = view.loopDelay_ms;
+  cells[32] = view.loopDelayWorst_ms;
 }

@@ -18,6 +18,15 @@ const CLEAR = 3;
 
 /** Gathers the temperature into one-second means, and with each new one looks ahead. */
 export function takeForecast(plan: Plan, state: State): void {
+  takeMean(state);
+  // Called for every sample, although they act once a second: the engine compiles only what is
+  // called often, and what is not compiled allocates.
+  takeSlope(state);
+  takeTimeToCap(plan, state);
+}
+
+function takeMean(state: State): void {
+  state.meanIsNew = 0;
   if (!Number.isFinite(state.case_degC)) {
     forgetForecast(state);
     return;
@@ -29,8 +38,7 @@ export function takeForecast(plan: Plan, state: State): void {
     state.secondSince_board_ms = state.board_ms;
     state.secondSum_K = 0;
     state.secondCount = 0;
-    takeSlope(state);
-    takeTimeToCap(plan, state);
+    state.meanIsNew = 1;
   }
   state.secondSum_K += state.case_degC;
   state.secondCount++;
@@ -48,6 +56,7 @@ export function forgetForecast(state: State): void {
 
 /** Least-squares slope over the means kept; zero where it is not clear of its standard error. */
 function takeSlope(state: State): void {
+  if (state.meanIsNew === 0) return;
   const kept = Math.min(state.minuteCount, MINUTE);
   state.caseSlope_KperS = Number.NaN;
   if (kept < MEANS_MIN) return;
@@ -74,6 +83,7 @@ function takeSlope(state: State): void {
 
 /** Walks the table toward warmer entries until the ceiling is under what is asked. */
 function takeTimeToCap(plan: Plan, state: State): void {
+  if (state.meanIsNew === 0) return;
   state.timeToCap_s = Number.NaN;
   const slope = state.caseSlope_KperS;
   if (!isLit(state) || state.capped === 1 || !(state.asked_mA > 0) || !(slope > 0)) return;

@@ -6,30 +6,23 @@ import { isLit } from "./cut.ts";
 import { PERMIT_SPACING_MS, type Plan } from "./plan.ts";
 import type { Input, Out } from "./records.ts";
 import type { State } from "./state.ts";
+import { COUNT_DUST } from "./tables.ts";
 
 /**
  * The permit: the only thing in the program that can raise current. One is made for the sample that
  * was judged in this very step, or none.
  */
 
-/** A count this close under the next one is that one: 1800 mA over 0.1 mA is 18000 counts. */
-const COUNT_DUST = 1e-6;
 /** Longest stretch over which an aim is slewed at once, ms: after a pause it does not leap. */
 const SLEW_MS_MAX = 1000;
-
-/** Counts of set for a current, rounded down; zero for what lies under the first count. */
-export function toSetCounts(plan: Plan, current_mA: number): number {
-  const counts = Math.floor((current_mA - plan.set.offset) / plan.set.perCount + COUNT_DUST);
-  return Math.max(0, counts);
-}
 
 /** Makes a permit for the sample just judged, where one is due and nothing is in doubt. */
 export function grantPermit(plan: Plan, state: State, input: Input, out: Out): void {
   if (!isDue(state, input)) return;
   if (inDoubt(plan, state)) return;
   raiseAim(plan, state);
-  const cap_counts = Math.min(toSetCounts(plan, state.ceiling_mA), plan.absolute_counts);
-  const aim_counts = Math.min(toSetCounts(plan, state.aim_mA), cap_counts);
+  const { cap_counts } = state;
+  const aim_counts = Math.min(aimCounts(plan, state), cap_counts);
 
   assert(isLit(state) && out.dark < 0, "a permit needs an open session and no dark in this step");
   assert(input.sample.seq === state.seq, "a permit names the sample just judged");
@@ -55,6 +48,12 @@ function isDue(state: State, input: Input): boolean {
   if (input.newest === 0 || input.portDrained === 0) return false;
   if ((state.status & STATUS.anchor) === 0) return false;
   return state.permits === 0 || state.board_ms - state.permit_board_ms >= PERMIT_SPACING_MS;
+}
+
+/** The aim in counts of set, as `toSetCounts` has it; a number passed by itself would be allocated. */
+function aimCounts(plan: Plan, state: State): number {
+  const { perCount, offset } = plan.set;
+  return Math.max(0, Math.floor((state.aim_mA - offset) / perCount + COUNT_DUST));
 }
 
 /** Moves the aim toward what the bench shall give: down at once, up by the slew. */

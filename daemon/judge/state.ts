@@ -71,6 +71,7 @@ const NUMBERS = {
 
   // The corridor there.
   ceiling_mA: Number.NaN,
+  cap_counts: 0,
   ceilingHighest_mA: Number.NaN,
   setHighest_mA: Number.NaN,
   setLowest_mA: Number.NaN,
@@ -114,6 +115,8 @@ const NUMBERS = {
   windowCount: 0,
   medianCount: 0,
   minuteCount: 0,
+  /** 1 in the step that completed a mean. */
+  meanIsNew: 0,
   secondSum_K: 0,
   secondCount: 0,
   secondSince_board_ms: Number.NaN,

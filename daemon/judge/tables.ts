@@ -45,6 +45,8 @@ export interface CaseTables {
   readonly shift: number;
   readonly case_degC: Float64Array;
   readonly ceiling_mA: Float64Array;
+  /** The ceiling in counts of set, rounded down and under the board's own: the cap of a permit. */
+  readonly cap_counts: Int32Array;
   readonly maker: Uint8Array;
   readonly floor_mA: Float64Array;
   /** 1 where the next entry is warmer, −1 where it is cooler. */
@@ -57,6 +59,15 @@ export interface OutputTable {
   readonly columns: number;
   readonly rows: number;
   readonly mW: Float64Array;
+}
+
+/** A count this close under the next one is that one: 1800 mA over 0.1 mA is 18000 counts. */
+export const COUNT_DUST = 1e-6;
+
+/** Counts of set for a current, rounded down; zero for what lies under the first count. */
+export function toSetCounts(set: SetScale, current_mA: number): number {
+  const counts = Math.floor((current_mA - set.offset_mA) / set.perCount_mA + COUNT_DUST);
+  return Math.max(0, counts);
 }
 
 /** Current that the board's table allows at a case count, set counts rounded down; zero outside. */
@@ -133,6 +144,7 @@ export function caseTables(
     shift,
     case_degC: new Float64Array(entries),
     ceiling_mA: new Float64Array(entries),
+    cap_counts: new Int32Array(entries),
     maker: new Uint8Array(entries),
     floor_mA: new Float64Array(entries),
     warmer: 1,
@@ -147,6 +159,7 @@ export function caseTables(
     const case_degC = lawToUnit(conversion.law, (low + high) / 2);
     tables.case_degC[i] = case_degC;
     tables.ceiling_mA[i] = least.current_mA;
+    tables.cap_counts[i] = Math.min(toSetCounts(set, least.current_mA), set.absolute_counts);
     tables.maker[i] = least.maker;
     tables.floor_mA[i] = fromFloorGrid(floors, case_degC);
   }

@@ -1,6 +1,5 @@
 import { describe, expect, test } from "vitest";
-import { toSetCounts } from "../../../daemon/judge/permit.ts";
-import { planOf } from "./bench.ts";
+import { toSetCounts } from "../../../daemon/judge/tables.ts";
 import { Rig } from "./rig.ts";
 
 describe("when a permit is made", () => {
@@ -76,17 +75,25 @@ describe("cap and aim", () => {
   });
 
   test("counts are rounded down, but not for the dust of a division", () => {
-    const plan = planOf();
-    const scale = (perCount: number, offset: number) => ({
-      ...plan,
-      set: { ...plan.set, perCount, offset },
+    const scale = (perCount_mA: number, offset_mA = 0) => ({
+      perCount_mA,
+      offset_mA,
+      absolute_counts: 4000,
     });
-    expect(toSetCounts(plan, 1499.9)).toBe(2999);
-    expect(toSetCounts(plan, 0.49)).toBe(0);
-    expect(toSetCounts(plan, -3)).toBe(0);
-    expect(toSetCounts(scale(0.1, 0), 1234.6)).toBe(12_346);
+    expect(toSetCounts(scale(0.5), 1499.9)).toBe(2999);
+    expect(toSetCounts(scale(0.5), 0.49)).toBe(0);
+    expect(toSetCounts(scale(0.5), -3)).toBe(0);
+    expect(toSetCounts(scale(0.1), 1234.6)).toBe(12_346);
     expect(toSetCounts(scale(0.1, 0.05), 100)).toBe(999);
-    expect(toSetCounts(scale(2, 0), 1799.99)).toBe(899);
+    expect(toSetCounts(scale(2), 1799.99)).toBe(899);
+  });
+
+  test("aim and cap are rounded down by the same rule", () => {
+    for (const asked of [0, 0.4, 0.5, 333.3, 1200.24, 1499.99]) {
+      const rig = new Rig().light(asked);
+      const scale = { perCount_mA: 0.5, offset_mA: 0, absolute_counts: 4000 };
+      expect(rig.permits.at(-1)?.aim).toBe(toSetCounts(scale, asked));
+    }
   });
 
   test("the aim waits at zero through the emission delay, then rises by the slew", () => {
