@@ -15,6 +15,8 @@ void test_arming(struct bench *b) {
   CHECK(b->drive == 0 && b->light_ticks == 0); /* the emission delay holds */
   bench_hold(b, 1000, 1200, 1000, 500);
   CHECK(b->drive == 1000 && b->enabled == 1);
+  bench_run(b, 20);
+  CHECK(strstr(b->sent + b->mark, " 1000 3125 8191 0 ") != 0); /* set as driven, then measured */
   CHECK(bench_sample(b, &seq, &status, &cause) && (status & 0x0403) == 0x0003);
   CHECK(b->unheld_light == 0);
   bench_line(b, ">dark 0");

@@ -15,6 +15,7 @@ static const struct core_channel channels[9] = {
 
 static void set_drive(void *ctx, uint16_t counts) {
   struct bench *b = ctx;
+  if (b->key_opens_in_drive) core_inputs(&b->core, 0, 1, 1, 0);
   if (counts == 0) b->held = 0;
   b->drive = b->held ? 0 : counts;
 }

@@ -23,6 +23,7 @@ struct bench {
 
   uint16_t drive;
   uint8_t held, enabled, lit;
+  uint8_t key_opens_in_drive; /* an interrupt finds the key open just before set_drive */
   uint32_t light_ticks;  /* with a drive above zero, so far */
   uint32_t unheld_light; /* of these, without a permit of ours that still runs: must stay 0 */
   uint32_t end_tick;     /* when the last permit we sent runs out, by our own sum */

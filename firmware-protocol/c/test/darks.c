@@ -32,6 +32,15 @@ static void give(struct bench *b, enum form form) {
   }
 }
 
+/* Two and one apart are no three. */
+void test_cancels_apart(struct bench *b) {
+  bench_boot(b, CORE_POWER);
+  CHECK(bench_light(b));
+  bench_bytes(b, "\x18\x18 \x18\x18\n", 6);
+  bench_run(b, 3);
+  CHECK(b->drive == 1000 && b->core.counts.bare == 0);
+}
+
 enum stage { STANDBY, DELAY, EMITTING, TRIPPED, STAGES };
 
 static void bring(struct bench *b, enum stage stage) {

@@ -3,6 +3,7 @@
 #include <string.h>
 
 #include "bench.h"
+#include "parts.h"
 
 static void lit(struct bench *b) {
   bench_make(b);
@@ -161,6 +162,17 @@ void test_key_loop(struct bench *b) {
   CHECK(b->core.state == CORE_STANDBY && b->core.key == 0);
 }
 
+/* An interrupt that cuts between the core's sum and its command wins, and the enable stands still. */
+void test_interrupted_pass(struct bench *b) {
+  lit(b);
+  b->key_opens_in_drive = 1;
+  bench_tick(b);
+  CHECK(b->drive == 0 && b->enabled == 0);
+  b->key_opens_in_drive = 0;
+  bench_tick(b);
+  CHECK(tripped(b, CORE_CAUSE_KEY_OFF));
+}
+
 static void load_slope(struct bench *b) {
   bench_line(b, ">stage 3");
   bench_line(b, ">point 0 4000 0");
@@ -254,4 +266,39 @@ void test_defect(struct bench *b) {
   b->board.channel_count = 0;
   core_init(&b->core, &b->board, &b->port, CORE_POWER);
   CHECK(b->core.state == CORE_TRIPPED && b->core.cause == CORE_CAUSE_DEFECT);
+}
+
+/* Against the sum in 64 bits: between points, rounded down, whichever way the curve goes. */
+void test_curve_rounds_down(struct bench *b) {
+  static const struct core_curve curve = {
+      {{100, 4400}, {133, 4393}, {1000, 77}, {1003, 77}, {40000, 65535}, {65535, 0}}, 6};
+  (void)b;
+  for (int32_t x = 100; x <= 65535; x += 3) {
+    uint8_t i = 1;
+    while (x > curve.point[i].x) i++;
+    const struct core_point p = curve.point[i - 1], q = curve.point[i];
+    int64_t span = q.x - p.x;
+    int64_t whole = (int64_t)p.y * span + ((int64_t)q.y - p.y) * (x - p.x);
+    CHECK(core_curve_at(&curve, x) == (uint16_t)(whole / span));
+  }
+  CHECK(core_curve_at(&curve, 99) == 0 && core_curve_at(&curve, 65536) == 0);
+  CHECK(core_curve_at(&curve, -1) == 0);
+}
+
+/* With rare passes the value in force between two of them still counts. */
+void test_peaks(struct bench *b) {
+  struct core_peak p = {{0, 0, 0, 0, 0}, 0, 0};
+  core_init(&b->core, &b->board, &b->port, CORE_POWER);
+  core_peak_add(&p, 900);
+  b->core.tick = 3;
+  core_peak_pass(&b->core, &p, 900, 20);
+  core_peak_add(&p, 300);
+  CHECK(core_peak_top(&p) == 900);
+  b->core.tick = 28;
+  core_peak_pass(&b->core, &p, 300, 20);
+  core_peak_add(&p, 100);
+  CHECK(core_peak_top(&p) == 300);
+  b->core.tick = 500;
+  core_peak_pass(&b->core, &p, 700, 20);
+  CHECK(core_peak_top(&p) == 700);
 }

@@ -17,13 +17,13 @@ void check(uint8_t fact, const char *text, const char *file, int line) {
   T(arming) T(arming_refused) T(number_once) T(number_dies) T(back_off) T(worn)              \
   T(boot_counter_rounds) T(first_permit) T(idle) T(idle_after_light) T(second_introduction)  \
   T(permit_refusals) T(expiry) T(ring) T(anchors) T(wraps) T(delay_again) T(slew_and_clip)   \
-  T(stuck_buffers) T(age_reported)                                                           \
-  T(darks) T(dark_ends_buffers) T(resets) T(reset_refused)                                   \
+  T(stuck_buffers) T(numbers) T(age_reported)                                                           \
+  T(darks) T(cancels_apart) T(dark_ends_buffers) T(resets) T(reset_refused)                                   \
   T(over_ceiling) T(over_ceiling_falls) T(over_aim) T(dark_current) T(case_over)             \
-  T(case_open_short) T(supply) T(converter_stops) T(key_loop) T(curve_limits)                \
-  T(curve_loading) T(curve_damaged) T(defect) T(injections) T(injection_rules)               \
-  T(boots) T(torn_trip) T(torn_arm) T(torn_dark) T(torn_reset) T(torn_counter)               \
-  T(memory_broken) T(replay)
+  T(case_open_short) T(supply) T(converter_stops) T(key_loop) T(interrupted_pass) T(curve_limits)                \
+  T(curve_loading) T(curve_rounds_down) T(peaks) T(curve_damaged) T(defect) T(injections) T(injection_rules)               \
+  T(boots) T(torn_trip) T(torn_arm) T(mark_before_light) T(torn_dark) T(torn_reset) T(torn_counter)               \
+  T(memory_broken) T(replay) T(random_sessions)
 
 #define DECLARE(name) void test_##name(struct bench *b);
 TESTS(DECLARE)

@@ -105,6 +105,18 @@ void test_torn_arm(struct bench *b) {
   CHECK(at == 9); /* six bytes of a counter, two of the mark */
 }
 
+/* However slow the memory: no light until the mark stands. */
+void test_mark_before_light(struct bench *b) {
+  bench_boot(b, CORE_POWER);
+  CHECK(bench_arm(b));
+  b->nv_busy = 7000;
+  b->core.latch_dirty = 1;
+  bench_hold(b, 6500, 1200, 1000, 500);
+  CHECK(b->core.state == CORE_ARMED && b->light_ticks == 0);
+  bench_hold(b, 1000, 1200, 1000, 500);
+  CHECK(b->drive == 1000);
+}
+
 static void person(struct bench *b) {
   bench_line(b, ">dark 0");
   bench_run(b, 100);
@@ -257,6 +269,8 @@ void test_replay(struct bench *b) {
   memcpy(b->nv, told->nv, sizeof b->nv);
   bench_boot(b, CORE_POWER);
   replay(b, told, 0);
+  const char *first = strstr(told->sent, "<offer arm "), *again = strstr(b->sent, "<offer arm ");
+  CHECK(first && again && strncmp(first, again, 19) != 0); /* another boot, another number */
   /* One whose tick is about to wrap. */
   bench_make(b);
   memcpy(b->nv, told->nv, sizeof b->nv);

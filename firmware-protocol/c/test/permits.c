@@ -61,6 +61,8 @@ void test_expiry(struct bench *b) {
 void test_ring(struct bench *b) {
   bench_boot(b, CORE_POWER);
   CHECK(bench_arm(b));
+  CHECK(b->core.seq < 60);
+  CHECK(refused(b, "unknown", b->core.seq - 60, 1200, 0, 9000)); /* a place never filled */
   bench_permit(b, 1200, 0, 9000);
   bench_run(b, 3000);
   uint32_t newest = b->core.seq;
@@ -173,4 +175,13 @@ void test_stuck_buffers(struct bench *b) {
   stuck(b, 200);
   bench_line(b, ">reset 2");
   stuck(b, 2000);
+}
+
+void test_numbers(struct bench *b) {
+  static const uint32_t numbers[] = {0,     9,      10,     255,      65535,      65536,
+                                     70000, 131071, 131072, 99999999, 2147483648, 4294967295};
+  bench_boot(b, CORE_POWER);
+  for (unsigned i = 0; i < sizeof numbers / sizeof numbers[0]; i++) {
+    CHECK(refused(b, "session", numbers[i], 1, 1, 500));
+  }
 }
