@@ -13,7 +13,7 @@ import { EVENT, tell } from "./tell.ts";
  */
 
 /** A warning is over only after this long, so that one that flickers is told once. */
-export const OFF_DELAY_MS = 2000;
+export const OFF_DELAY_ms = 2000;
 
 const TRIPS_WHEN_LIT = Int8Array.from(HAZARDS, (row) => (row.trips === "lit" ? 1 : 0));
 const TRIPS_CONNECTED = Int8Array.from(HAZARDS, (row) => (row.trips === "connected" ? 1 : 0));
@@ -57,7 +57,7 @@ function judgeOver(plan: Plan, state: State, out: Out, row: number): void {
     return;
   }
   if (Number.isNaN(state.warnOver[row] as number)) state.warnOver[row] = state.board_ms;
-  if (state.board_ms - (state.warnOver[row] as number) < OFF_DELAY_MS) return;
+  if (state.board_ms - (state.warnOver[row] as number) < OFF_DELAY_ms) return;
   state.warned[row] = 0;
   state.warnSince[row] = Number.NaN;
   tell(out, EVENT["warning-over"], eventHazardOf(row), value, level);

@@ -16,7 +16,7 @@ const NO_CAUSE = 255;
 const PERSON = 0;
 
 /** The board may send samples of its old state for this long after an order or an arming, ms. */
-export const AGREE_MS = 500;
+export const AGREE_ms = 500;
 
 export function followBoard(state: State, out: Out): void {
   if ((state.status & STATUS.tripped) !== 0) boardTripped(state, out);
@@ -45,7 +45,7 @@ function boardLit(state: State, out: Out): void {
   }
   // Dark was ordered: it is repeated with each sample until the board reports it.
   const ordered_ms = state.now_mono_ms - state.darkOrdered_mono_ms;
-  if (ordered_ms < AGREE_MS) out.dark = state.darkOrdered;
+  if (ordered_ms < AGREE_ms) out.dark = state.darkOrdered;
   else trip(state, out, STATE_DIFFERS, state.status, state.state);
 }
 
@@ -65,7 +65,7 @@ function boardDark(state: State, out: Out): void {
   if (isLit(state)) {
     const agreed = state.sawArmed === 1;
     const armed_ms = state.now_mono_ms - state.armed_mono_ms;
-    if (!agreed && armed_ms < AGREE_MS) return;
+    if (!agreed && armed_ms < AGREE_ms) return;
     if (agreed && state.boardCause === ARMED_IDLE) {
       fallBack(state, out, ARMED_IDLE, state.current_mA, state.case_degC);
     } else trip(state, out, STATE_DIFFERS, state.status, state.state);

@@ -15,7 +15,7 @@ const SATURATED_SHARE = 0.97;
 /** Lost output is judged only where current is well above the floor. */
 const ABOVE_FLOOR = 1.2;
 /** Light and current may take this long beyond the fall time to leave the averaged readings, ms. */
-const SETTLE_MS = 60;
+const SETTLE_ms = 60;
 
 /** Rows that are judged elsewhere: by a deadline or a link fact. */
 export function nothing(): void {}
@@ -91,7 +91,7 @@ export function loop(_plan: Plan, state: State, row: number): void {
 /** Whether the bench has been dark for long enough that current and light must be gone. */
 function isSettledDark(plan: Plan, state: State): boolean {
   const dark_ms = state.board_ms - state.darkSince_board_ms;
-  return dark_ms > plan.fall_ms + 2 * plan.period_ms + SETTLE_MS;
+  return dark_ms > plan.fall_ms + 2 * plan.period_ms + SETTLE_ms;
 }
 
 export function darkCurrent(plan: Plan, state: State, row: number): void {

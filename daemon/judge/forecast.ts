@@ -8,11 +8,11 @@ import { MINUTE, type State } from "./state.ts";
  * horizon, and nothing where the slope is not clear of its own noise.
  */
 
-const SECOND_MS = 1000;
+const SECOND_ms = 1000;
 /** Means before a slope is told, seconds. */
 const MEANS_MIN = 20;
 /** How far ahead a straight line is believed, seconds: the case settles on its way there. */
-export const HORIZON_S = 1800;
+export const HORIZON_s = 1800;
 /** A slope under this many of its standard errors is called level. */
 const CLEAR = 3;
 
@@ -32,7 +32,7 @@ function takeMean(state: State): void {
     return;
   }
   if (Number.isNaN(state.secondSince_board_ms)) state.secondSince_board_ms = state.board_ms;
-  if (state.board_ms - state.secondSince_board_ms >= SECOND_MS && state.secondCount > 0) {
+  if (state.board_ms - state.secondSince_board_ms >= SECOND_ms && state.secondCount > 0) {
     state.minute[state.minuteCount % MINUTE] = state.secondSum_K / state.secondCount;
     state.minuteCount++;
     state.secondSince_board_ms = state.board_ms;
@@ -88,7 +88,7 @@ function takeTimeToCap(plan: Plan, state: State): void {
   const slope = state.caseSlope_KperS;
   if (!isLit(state) || state.capped === 1 || !(state.asked_mA > 0) || !(slope > 0)) return;
   const { ceiling_mA, case_degC, warmer, shift, count_min } = plan.case;
-  const warmest_degC = state.case_degC + slope * HORIZON_S;
+  const warmest_degC = state.case_degC + slope * HORIZON_s;
   let i = (state.case_counts - count_min) >> shift;
   while (i >= 0 && i < case_degC.length) {
     const there_degC = case_degC[i] as number;

@@ -3,7 +3,7 @@ import { inDoubt } from "./alarm.ts";
 import { assert } from "./assert.ts";
 import { target_mA } from "./cap.ts";
 import { isLit } from "./cut.ts";
-import { PERMIT_SPACING_MS, type Plan } from "./plan.ts";
+import { PERMIT_SPACING_ms, type Plan } from "./plan.ts";
 import type { Input, Out } from "./records.ts";
 import type { State } from "./state.ts";
 import { COUNT_DUST } from "./tables.ts";
@@ -14,7 +14,7 @@ import { COUNT_DUST } from "./tables.ts";
  */
 
 /** Longest stretch over which an aim is slewed at once, ms: after a pause it does not leap. */
-const SLEW_MS_MAX = 1000;
+const SLEW_ms_MAX = 1000;
 
 /** Makes a permit for the sample just judged, where one is due and nothing is in doubt. */
 export function grantPermit(plan: Plan, state: State, input: Input, out: Out): void {
@@ -47,7 +47,7 @@ function isDue(state: State, input: Input): boolean {
   // After a stall only the newest sample may earn a permit, and only into an empty port.
   if (input.newest === 0 || input.portDrained === 0) return false;
   if ((state.status & STATUS.anchor) === 0) return false;
-  return state.permits === 0 || state.board_ms - state.permit_board_ms >= PERMIT_SPACING_MS;
+  return state.permits === 0 || state.board_ms - state.permit_board_ms >= PERMIT_SPACING_ms;
 }
 
 /** The aim in counts of set, as `toSetCounts` has it; a number passed by itself would be allocated. */
@@ -60,7 +60,7 @@ function aimCounts(plan: Plan, state: State): number {
 function raiseAim(plan: Plan, state: State): void {
   const target = target_mA(state);
   const since_ms = state.permits === 0 ? 0 : state.board_ms - state.permit_board_ms;
-  const step_mA = (plan.slewUp_mAperS * Math.min(since_ms, SLEW_MS_MAX)) / 1000;
+  const step_mA = (plan.slewUp_mAperS * Math.min(since_ms, SLEW_ms_MAX)) / 1000;
   // The board holds current back during the emission delay, and an injected reading is not true:
   // the ramp waits, so that it does not begin at its end.
   const waits = (state.status & (STATUS.delay | STATUS.injected)) !== 0;

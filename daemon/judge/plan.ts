@@ -68,7 +68,7 @@ export type CompiledPlan =
   | { readonly ok: false; readonly problems: string[] };
 
 /** Least controller time between two permits, ms. */
-export const PERMIT_SPACING_MS = 50;
+export const PERMIT_SPACING_ms = 50;
 /** A term holds at least this many sample periods, so that lost samples do not end light. */
 export const PERIODS_PER_TERM_MIN = 5;
 
@@ -165,7 +165,7 @@ function timesOf(bench: Bench, manifest: Manifest) {
     tick_ms: manifest.tick_us / 1000,
     period_ms,
     fall_ms: manifest.fall_ms,
-    window_ms: manifest.fall_ms + PERMIT_SPACING_MS + 2 * period_ms,
+    window_ms: manifest.fall_ms + PERMIT_SPACING_ms + 2 * period_ms,
     term_ms: bench.controller.term_ms,
     term_ticks: termTicks(bench, manifest),
   };
@@ -195,7 +195,7 @@ function timeProblems(bench: Bench, manifest: Manifest): string[] {
   }
   const term_ms_min = Math.max(
     (PERIODS_PER_TERM_MIN * 1000) / manifest.rate_perS,
-    2 * PERMIT_SPACING_MS,
+    2 * PERMIT_SPACING_ms,
   );
   if (term_ms < term_ms_min) {
     problems.push(

@@ -9,7 +9,7 @@ import { MEDIAN, type State } from "./state.ts";
 /** A clock that is ahead by more than this many sample periods at once has jumped. */
 const JUMP_PERIODS = 2;
 /** And by at least this, ms: below it the jitter of an adapter could be behind it. */
-const JUMP_MS_MIN = 100;
+const JUMP_ms_MIN = 100;
 
 /**
  * Takes the sample's number and tick.
@@ -23,7 +23,7 @@ export function takeClock(plan: Plan, state: State, input: Input): boolean {
   if (known && !newer && isLit(state)) return false;
   const ticks = known ? counterDistance(sample.tick, state.tick) : 0;
   const backwards = known && ticks <= 0;
-  const limit_ms = Math.max(JUMP_MS_MIN, JUMP_PERIODS * plan.period_ms);
+  const limit_ms = Math.max(JUMP_ms_MIN, JUMP_PERIODS * plan.period_ms);
   state.tickJumped = backwards || Math.abs(input.jump_ms) > limit_ms ? 1 : 0;
   if (known && !backwards) state.board_ms += ticks * plan.tick_ms;
   state.frozen = known && sample.conversions === state.conversions ? 1 : 0;

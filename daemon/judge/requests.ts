@@ -24,7 +24,7 @@ const SCRIPTED = ASKERS.indexOf("scripted-person");
 const PERSON = 0;
 
 /** The link gives an exchange up before this; beyond it the judge does so itself, ms. */
-export const EXCHANGE_MS = 3000;
+export const EXCHANGE_ms = 3000;
 
 const CASE_OVER = rowOf("case-over");
 const SENSOR_ROWS = [rowOf("case-open"), rowOf("case-short"), rowOf("sensor-range")];
@@ -67,7 +67,7 @@ function askArm(plan: Plan | null, state: State, input: Input, out: Out): void {
   state.arming = PENDING.waiting;
   state.armingId = input.requestId;
   state.arming_mA = input.value;
-  state.armingUntil_mono_ms = input.now_ms + EXCHANGE_MS;
+  state.armingUntil_mono_ms = input.now_ms + EXCHANGE_ms;
   out.order = ORDER.arm;
   answer(out, input.requestId, ANSWER.begun, input.value);
 }
@@ -141,7 +141,7 @@ function askReset(plan: Plan | null, state: State, input: Input, out: Out): void
   }
   state.resetting = PENDING.waiting;
   state.resettingId = input.requestId;
-  state.resettingUntil_mono_ms = input.now_ms + EXCHANGE_MS;
+  state.resettingUntil_mono_ms = input.now_ms + EXCHANGE_ms;
   if ((state.status & STATUS.tripped) === 0) {
     clearLatch(state, out);
     return;

@@ -42,7 +42,7 @@ export function step(plan: Plan | null, state: State, input: Input, out: Out): v
 
 const TICK_DRIFT = 72;
 /** Emission delay of the board, ms; fixed in the protocol. */
-const EMISSION_DELAY_MS = 4000;
+const EMISSION_DELAY_ms = 4000;
 
 /** One sample: taken, compared with the board's state, placed in the corridor, judged, permitted. */
 function judgeSample(plan: Plan, state: State, input: Input, out: Out): void {
@@ -104,7 +104,7 @@ function show(state: State, out: Out): void {
   showCorridor(state, out);
   view.caseSlope_KperS = state.caseSlope_KperS;
   view.timeToCap_s = lit ? state.timeToCap_s : Number.NaN;
-  const left_ms = state.delaySince_board_ms + EMISSION_DELAY_MS - state.board_ms;
+  const left_ms = state.delaySince_board_ms + EMISSION_DELAY_ms - state.board_ms;
   view.delayLeft_ms = Number.isNaN(left_ms) ? 0 : Math.max(0, left_ms);
   view.loopDelay_ms = state.loopDelay_ms;
   view.loopDelayWorst_ms = state.loopDelayWorst_ms;

@@ -14,8 +14,8 @@ import { derated_mA, junctionLimited_mA, power_mW } from "../physics/diode.ts";
 const ENTRIES_MAX = 65_536;
 
 /** Grid of the slow functions: floor and expected output, by case temperature and current. */
-const GRID_DEGC_MIN = -40;
-const GRID_DEGC_MAX = 150;
+const GRID_degC_MIN = -40;
+const GRID_degC_MAX = 150;
 const FLOOR_STEP_K = 0.1;
 const OUTPUT_STEP_K = 0.5;
 const OUTPUT_CURRENTS = 128;
@@ -169,9 +169,9 @@ export function caseTables(
 }
 
 function floorGrid(bench: Bench): Float64Array {
-  const grid = new Float64Array(Math.round((GRID_DEGC_MAX - GRID_DEGC_MIN) / FLOOR_STEP_K) + 1);
+  const grid = new Float64Array(Math.round((GRID_degC_MAX - GRID_degC_MIN) / FLOOR_STEP_K) + 1);
   for (let i = 0; i < grid.length; i++) {
-    const case_degC = GRID_DEGC_MIN + i * FLOOR_STEP_K;
+    const case_degC = GRID_degC_MIN + i * FLOOR_STEP_K;
     grid[i] = floor_mA(bench.diode, bench.crystal, case_degC, bench.diode.absolute_mA);
   }
   return grid;
@@ -179,7 +179,7 @@ function floorGrid(bench: Bench): Float64Array {
 
 /** Straight between grid points; NaN outside the grid, Infinity where a neighbour is. */
 function fromFloorGrid(grid: Float64Array, case_degC: number): number {
-  const place = (case_degC - GRID_DEGC_MIN) / FLOOR_STEP_K;
+  const place = (case_degC - GRID_degC_MIN) / FLOOR_STEP_K;
   const i = Math.floor(place);
   if (!(i >= 0 && i < grid.length - 1)) return Number.NaN;
   const below = grid[i] as number;
@@ -190,13 +190,13 @@ function fromFloorGrid(grid: Float64Array, case_degC: number): number {
 
 /** Works out what a healthy bench gives at every half kelvin and 128 currents up to its limit. */
 export function outputTable(bench: Bench): OutputTable {
-  const rows = (GRID_DEGC_MAX - GRID_DEGC_MIN) / OUTPUT_STEP_K + 1;
+  const rows = (GRID_degC_MAX - GRID_degC_MIN) / OUTPUT_STEP_K + 1;
   const columns = OUTPUT_CURRENTS + 1;
   const current_mA_step = bench.limits.current_mA / OUTPUT_CURRENTS;
   const mW = new Float64Array(rows * columns);
   const { diode, crystal } = bench;
   for (let r = 0; r < rows; r++) {
-    const case_degC = GRID_DEGC_MIN + r * OUTPUT_STEP_K;
+    const case_degC = GRID_degC_MIN + r * OUTPUT_STEP_K;
     for (let c = 0; c < columns; c++) {
       const current_mA = c * current_mA_step;
       mW[r * columns + c] =
@@ -215,7 +215,7 @@ export function expectedOutput_mW(
   case_degC: number,
 ): number {
   const across = Math.max(0, current_mA) / table.current_mA_step;
-  const down = (case_degC - GRID_DEGC_MIN) / OUTPUT_STEP_K;
+  const down = (case_degC - GRID_degC_MIN) / OUTPUT_STEP_K;
   // Above the limit the last two columns are drawn on: measured current may pass it by its error.
   const c = Math.min(Math.floor(across), table.columns - 2);
   const r = Math.floor(down);

@@ -36,7 +36,7 @@ export interface EventWords {
 }
 
 /** Without a sample for this long, what is shown is called old, ms. */
-export const SILENT_MS = 2000;
+export const SILENT_ms = 2000;
 
 const amps = (current_mA: number): string => formatQuantity("current", current_mA, 10);
 /** A limit is rounded down, so that typing what is read is never refused. */
@@ -54,7 +54,7 @@ export function stateSentence(names: SentenceNames, view: View, age_ms: number):
   const { bench } = names;
   if (view.state === STATE.tripped) return trippedSentence(bench, view);
   if (view.state === STATE.offline) return `No controller answers for ${bench}.`;
-  if (age_ms >= SILENT_MS) {
+  if (age_ms >= SILENT_ms) {
     const last = Number.isNaN(view.current_mA) ? "nothing" : amps(view.current_mA);
     return `Nothing heard from ${bench} for ${duration(age_ms)}. It last said ${last}; whether it is dark is not known here.`;
   }
@@ -101,7 +101,7 @@ export function nextSentence(names: SentenceNames, view: View, age_ms: number): 
   if (view.state === STATE.tripped) return afterTrip(view);
   if (view.state === STATE.offline)
     return "It is being looked for; when it answers it starts dark.";
-  if (age_ms >= SILENT_MS) return "Look at the cable and at the board's supply.";
+  if (age_ms >= SILENT_ms) return "Look at the cable and at the board's supply.";
   if (view.state === STATE.standby) {
     return `At this case it may have ${atMost(view.ceiling_mA)}; ${makerWords(view)} makes that ceiling.`;
   }

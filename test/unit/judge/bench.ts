@@ -12,8 +12,8 @@ import type { Channel, Manifest } from "../../../daemon/model/manifest.ts";
 
 /** A diode alone, with round numbers: case = counts / 100 °C, current and set 0.5 mA a count. */
 
-export const TERM_MS = 500;
-const times = { rate_perS: 50, term_ms: TERM_MS, darkTime_ms: 600_000 };
+export const TERM_ms = 500;
+const times = { rate_perS: 50, term_ms: TERM_ms, darkTime_ms: 600_000 };
 
 const hazards = Object.fromEntries(
   HAZARD_IDS.map((id) => [id, defaultLevels(id, times)]),
@@ -27,7 +27,7 @@ export const BENCH: Bench = {
     transport: { kind: "built-in", seed: 1 },
     serial: null,
     rate_perS: 50,
-    term_ms: TERM_MS,
+    term_ms: TERM_ms,
   },
   diode: {
     wavelength_nm: 808,

@@ -26,8 +26,8 @@ export interface Told {
   readonly at_ms: number;
 }
 
-const PERIOD_MS = 20;
-const DELAY_MS = 4000;
+const PERIOD_ms = 20;
+const DELAY_ms = 4000;
 
 /**
  * A judge on a bench of plain numbers: a board that obeys, whose readings a test sets at will. It
@@ -106,9 +106,9 @@ export class Rig {
   /** One sample period, or several. */
   sample(times = 1): void {
     for (let i = 0; i < times; i++) {
-      this.now_ms += PERIOD_MS;
+      this.now_ms += PERIOD_ms;
       this.input.sample.seq++;
-      this.input.sample.tick += PERIOD_MS;
+      this.input.sample.tick += PERIOD_ms;
       this.input.sample.conversions = (this.input.sample.conversions + 1) & 0xffff;
       this.again();
     }
@@ -160,7 +160,7 @@ export class Rig {
   arm(current_mA: number, asker: Asker = "person"): string {
     const refusal = this.request("arm", current_mA, asker);
     if (this.out.order === ORDER.arm) {
-      this.board = { ...this.board, armed: true, aim: 0, delayUntil_ms: this.now_ms + DELAY_MS };
+      this.board = { ...this.board, armed: true, aim: 0, delayUntil_ms: this.now_ms + DELAY_ms };
       this.fact("armed");
     }
     return refusal;
