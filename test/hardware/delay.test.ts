@@ -67,6 +67,29 @@ describe.each([
     expect(Math.max(...ages)).toBeLessThan(TERM);
   });
 
+  test("for 300 ms, then silence: the term has counted from the judged sample, not from receipt", async () => {
+    host = await emittingBoard();
+    const { world } = host;
+    await host.quiet();
+    let posted = false;
+    world[direction].stuckUntil = world.now + 300 * CYCLES_PER_MS;
+    // One permit for the first sample from now on; it or its sample waits in the buffer.
+    host.post = (line) => {
+      world.sendLine(line);
+      host.wish = null;
+      posted = true;
+    };
+    await world.until("the permit's acknowledgement", 400, () => {
+      return posted && host.last.ack === host.permitted?.n;
+    });
+    expect(host.last.age).toBeGreaterThan(250);
+    const { tick, term } = host.permitted ?? { tick: 0, term: 0 };
+    const end = await world.cycleOfTick(tick + term);
+    await world.pass(TERM + 100);
+    expect(Math.abs(world.cutAfter_ms(end - 10 * CYCLES_PER_MS) - 10)).toBeLessThan(PASS_MS);
+    expect(host.last.cause).toBe(2);
+  });
+
   test("for 2 s: dark at the end of the last term, and what comes late lights nothing", async () => {
     host = await emittingBoard();
     const { world } = host;

@@ -189,10 +189,13 @@ describe("a bad wire", () => {
 });
 
 describe("the board itself fails", () => {
-  test("main loop hangs: the one-shot ends the light, the watchdog the hang", async () => {
+  test.each([
+    ["main loop", "core_pass"],
+    ["interrupt", "__vector_14"],
+  ])("%s hangs: the one-shot ends the light, the watchdog the hang", async (_name, symbol) => {
     host = await emittingBoard();
     const { world } = host;
-    await world.chip.command("hang core_pass");
+    await world.chip.command(`hang ${symbol}`);
     const from = world.now;
     await darkWithin(from, ONE_SHOT_MS + 5);
     await world.pass(600);

@@ -43,7 +43,6 @@ static volatile uint32_t tick;
 static uint8_t slot, selected, turn, ticksInSample;
 static uint16_t noise;
 static struct sums running, finished;
-static uint32_t finishedTick;
 static bool fresh;
 
 void converter_init(void) {
@@ -73,7 +72,6 @@ static void endTick(void) {
   if (++ticksInSample < SAMPLE_TICKS) return;
   ticksInSample = 0;
   finished = running;
-  finishedTick = tick;
   running = (struct sums){{0}, {0}};
   fresh = true;
 }
@@ -117,7 +115,7 @@ bool converter_sample(int32_t reading[INPUTS], uint32_t *at) {
     whole = fresh;
     fresh = false;
     sums = finished;
-    *at = finishedTick;
+    *at = tick - ticksInSample; /* when it was finished */
   }
   if (!whole) return false;
   for (uint8_t n = 0; n < INPUTS; n++) reading[n] = average(sums.sum[n], sums.count[n]);
