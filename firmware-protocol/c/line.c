@@ -60,8 +60,8 @@ uint8_t core_begins_dark(const uint8_t *bytes, uint8_t length) {
                    same_letter(bytes[at + 3u], 'k'));
 }
 
-/** 1 if the bytes begin with `>permit`. */
-uint8_t core_begins_permit(const uint8_t *bytes, uint8_t length) {
+/* 1 if the bytes begin with `>permit`. */
+static uint8_t begins_permit(const uint8_t *bytes, uint8_t length) {
   if (length < 7u || bytes[0] != (uint8_t)'>') return 0;
   for (uint8_t i = 0; i < 6u; i++) {
     if (bytes[i + 1u] != (uint8_t)core_verb_letter(VERB_PERMIT, i)) return 0;
@@ -106,7 +106,7 @@ static uint8_t may_wait(struct core *c) {
   uint8_t prefix[PREFIX_BYTES];
   uint8_t n = peek(c, prefix, c->scanned);
   uint8_t tight = (uint8_t)(c->port->send(c->port->ctx, c->line, 0) < ANSWER_ROOM);
-  if (!tight || core_begins_dark(prefix, n) || core_begins_permit(prefix, n)) return 0;
+  if (!tight || core_begins_dark(prefix, n) || begins_permit(prefix, n)) return 0;
   return (uint8_t)!core_held(c, &c->waiting, 1, c->tick, ROOM_WAIT_MS);
 }
 

@@ -74,7 +74,6 @@ uint16_t core_peak_top(const struct core_peak *p);
 /* line.c */
 uint8_t core_line_take(struct core *c);
 uint8_t core_begins_dark(const uint8_t *bytes, uint8_t length);
-uint8_t core_begins_permit(const uint8_t *bytes, uint8_t length);
 
 /* parse.c */
 uint8_t core_judge_line(const uint8_t *line, uint16_t length, struct core_order *order);
