@@ -211,7 +211,10 @@ const eventFrom = (row: EventRow): BenchEvent => ({
   wall: wall(row.wall_ms),
   kind: row.kind,
   hazard: row.hazard,
-  data: JSON.parse(row.data) as BenchEvent["data"],
+  // JSON has no NaN: a number that was not known was written as null.
+  data: JSON.parse(row.data, (_key, value) =>
+    value === null ? Number.NaN : value,
+  ) as BenchEvent["data"],
 });
 
 interface StoredRun {

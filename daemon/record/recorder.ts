@@ -387,7 +387,9 @@ export class Recorder {
   #words(): string {
     const lost = this.#lostRows === 0 ? "" : ` ${this.#lostRows} samples of this run are lost.`;
     const entries = this.#lostEntries === 0 ? "" : ` ${this.#lostEntries} inputs are lost.`;
-    const faults = this.store.faults.map((fault) => ` An old ${fault}.`).join("");
+    const faults = this.store.faults
+      .map((fault) => ` Samples of an earlier session cannot be read (${fault}); the rest is kept.`)
+      .join("");
     return `${this.#trouble}${lost}${entries}${faults}`.trim();
   }
 }

@@ -84,6 +84,7 @@ describe("what goes in comes out", () => {
       event(2, "warning", "case-over"),
       { ...event(2, "desk"), id: 3 },
     ]);
+    expect(reader.events(all)[0]?.data).toEqual({ a: 0.1, b: Number.NaN, words: "a word" });
     expect(reader.events(all, "south")).toEqual([]);
     expect(reader.eventsOfRun(2).map((e) => e.kind)).toEqual(["desk"]);
     reader.close();

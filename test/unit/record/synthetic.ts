@@ -26,7 +26,7 @@ export const event = (id: number, kind: BenchEvent["kind"], hazard = ""): BenchE
   wall: wall(START_ms + id),
   kind,
   hazard,
-  data: { a: 0.1, words: "a word" },
+  data: { a: 0.1, b: Number.NaN, words: "a word" },
 });
 
 /** A recorder in this thread, its ring, and what it told. */

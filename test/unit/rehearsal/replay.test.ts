@@ -3,6 +3,7 @@ import { afterAll, beforeAll, describe, expect, test } from "vitest";
 import { makeCurve } from "../../../daemon/bench-file/curve.ts";
 import { parseBench } from "../../../daemon/bench-file/parse.ts";
 import { North } from "../../../daemon/bench-sim/north.ts";
+import { simulateNight } from "../../../daemon/cli/demo-night.ts";
 import { DIGEST_START, mixOut } from "../../../daemon/judge/digest.ts";
 import { JUDGE_VERSION } from "../../../daemon/judge/records.ts";
 import { newState, restoreLatch } from "../../../daemon/judge/state.ts";
@@ -93,6 +94,10 @@ class Life {
     this.#lockstep.disconnect("the cable was pulled");
   }
 
+  adopt(text: string): void {
+    this.loop.adopt(benchOf(text), text, this.#lockstep.now());
+  }
+
   request(name: Parameters<Loop["request"]>[0], value: number): void {
     this.loop.request(name, value, "person", 1, this.#lockstep.now());
   }
@@ -111,7 +116,10 @@ class Life {
   }
 }
 
-/** Arming, capping currents, an ordered dark, a pulled cable while emitting, a reset and a restart. */
+/** The bench's own limit, in north's text. */
+const LIMIT = /^( {2}current: )[^\n]*/m;
+
+/** Arming, setting, dark, another bench file, a cable pulled while emitting, a reset, a sudden end. */
 function firstLife(folder: string, text: string): Lived {
   const life = new Life(folder, text);
   life.plug();
@@ -121,6 +129,8 @@ function firstLife(folder: string, text: string): Lived {
   life.request("set", 1800);
   life.pass(300);
   life.request("dark", 0);
+  life.pass(20);
+  life.adopt(text.replace(LIMIT, "$11400 mA"));
   life.pass(20);
   life.request("arm", 1200);
   life.pass(60);
@@ -167,6 +177,18 @@ function replayRun(run: number, change: (benchText: string) => string = (same) =
   );
 }
 
+/** Events of kind "link" are told by the loop itself, from what the link said: not by a step. */
+function expectSameEvents(record: RecordReader, run: number, again: Replayed): void {
+  const judged = record.eventsOfRun(run).filter((event) => event.kind !== "link");
+  const plain = (n: unknown): unknown => (Number.isFinite(n) ? n : null);
+  expect(
+    again.events
+      .filter((event) => event.kind !== "link")
+      .map((e) => [e.input, e.kind, hazardId(e.hazard), plain(e.a), plain(e.b)]),
+  ).toEqual(judged.map((e) => [e.input, e.kind, e.hazard, plain(e.data.a), plain(e.data.b)]));
+  expect(judged.length).toBeGreaterThan(0);
+}
+
 describe("a recorded life of the daemon, through the same step again", () => {
   test("the night had what a night may have", () => {
     const kinds = new Set(lives[0]?.events.map((event) => event.kind));
@@ -185,25 +207,38 @@ describe("a recorded life of the daemon, through the same step again", () => {
   });
 
   test.each([1, 2])("life %i: the events are those in the record", (run) => {
-    const recorded = reader.eventsOfRun(run);
-    // Events of kind "link" are told by the loop itself, from what the link said.
-    const judged = recorded.filter((event) => event.kind !== "link");
-    const again = replayRun(run).events.filter((event) => event.kind !== "link");
-    const plain = (n: unknown): unknown => (Number.isFinite(n) ? n : null);
-    expect(again.map((e) => [e.input, e.kind, hazardId(e.hazard), plain(e.a), plain(e.b)])).toEqual(
-      judged.map((e) => [e.input, e.kind, e.hazard, plain(e.data.a), plain(e.data.b)]),
-    );
-    expect(judged.length).toBeGreaterThan(0);
+    expectSameEvents(reader, run, replayRun(run));
+  });
+
+  test("a night of the demo gives the events of its record", async () => {
+    const { folder, remove } = scratchFolder();
+    await simulateNight({ length_ms: 15 * 60_000, seed: SEED, folder, paced: false });
+    const night = openReader(folder);
+    const plans = (file: number, manifest: number) =>
+      planOf(night.benchText(file), night.manifest(manifest));
+    const again = replay(night.inputs(1), plans, newState());
+    expect(again.missing).toBe(0);
+    expect(again.inputs).toBeGreaterThan(15 * 60 * RATE_perS - 100);
+    expectSameEvents(night, 1, again);
+    night.close();
+    remove();
   });
 
   test("other limits give another night", () => {
-    const lower = (benchText: string): string =>
-      benchText.replace(/^( {2}current: )[^\n]*/m, "$1900 mA");
+    const lower = (benchText: string): string => benchText.replace(LIMIT, "$1900 mA");
     expect(lower(text)).not.toBe(text);
     const again = replayRun(1, lower);
     expect(again.missing).toBe(0);
     expect(again.digest).not.toBe(lives[0]?.digest);
     expect(again.events).not.toEqual(replayRun(1).events);
+  });
+
+  test("both bench files of the first life are in its record", () => {
+    const files = new Set(Array.from(reader.inputs(1), (input) => input.benchFile));
+    expect([...files].map((id) => reader.benchText(id).match(LIMIT)?.[0])).toEqual([
+      text.match(LIMIT)?.[0],
+      "  current: 1400 mA",
+    ]);
   });
 
   test("a hole in the record is told as such", () => {
