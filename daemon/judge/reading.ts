@@ -22,7 +22,9 @@ export function takeClock(plan: Plan, state: State, input: Input): boolean {
   // A dark board may have started its numbers anew; a lit one may not.
   if (known && !newer && isLit(state)) return false;
   const ticks = known ? counterDistance(sample.tick, state.tick) : 0;
-  const backwards = known && ticks <= 0;
+  // Two samples within one tick are legal only where samples come nearly as fast as ticks.
+  const mayStand = plan.period_ms < 2 * plan.tick_ms;
+  const backwards = known && (mayStand ? ticks < 0 : ticks <= 0);
   const limit_ms = Math.max(JUMP_ms_MIN, JUMP_PERIODS * plan.period_ms);
   state.tickJumped = backwards || Math.abs(input.jump_ms) > limit_ms ? 1 : 0;
   if (known && !backwards) state.board_ms += ticks * plan.tick_ms;
