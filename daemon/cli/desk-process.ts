@@ -7,7 +7,7 @@ import { builtFile } from "../paths.ts";
 import { reasonOf } from "./say.ts";
 
 /** A desk that has not told that it lives for this long is ended and started anew, ms. */
-const SILENCE_MS_MAX = 5000;
+const SILENCE_ms_MAX = 5000;
 /** Pause before a desk that ended is started again, ms. */
 const AGAIN_MS = 500;
 /** Less favoured than the judging thread by this much (nice). */
@@ -119,7 +119,7 @@ export class DeskProcess {
   }
 
   #look(): void {
-    if (this.#heard_ms === 0 || performance.now() - this.#heard_ms < SILENCE_MS_MAX) return;
+    if (this.#heard_ms === 0 || performance.now() - this.#heard_ms < SILENCE_ms_MAX) return;
     this.#onWords("The desk hangs and is ended; judge and record go on.");
     this.#child?.kill("SIGKILL");
   }

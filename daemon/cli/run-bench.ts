@@ -32,8 +32,8 @@ export interface RunOptions {
 const RING_RATE_MAX_perS = 250;
 const RING_SECONDS = 60;
 /** How long an ending daemon waits for the board to report dark, and for the disk, ms. */
-const DARK_MS_MAX = 400;
-const CLOSE_MS_MAX = 3000;
+const DARK_ms_MAX = 400;
+const CLOSE_ms_MAX = 3000;
 
 /** Causes that an ending daemon leaves behind. */
 const BY_PERSON = 0;
@@ -87,13 +87,13 @@ export async function runBench(options: RunOptions): Promise<void> {
     }
     const cause = await end.wait(options.for_ms);
     supervision.leave(cause);
-    await until(DARK_MS_MAX, () => !isLit(supervision));
+    await until(DARK_ms_MAX, () => !isLit(supervision));
   } finally {
     supervision.close();
     desk.process?.close();
     removeNotice(bench.name);
     rmSync(socket, { force: true });
-    await Promise.race([recording.client.close(), pause(CLOSE_MS_MAX)]);
+    await Promise.race([recording.client.close(), pause(CLOSE_ms_MAX)]);
   }
 }
 

@@ -7,7 +7,7 @@ type WithoutId<T> = T extends unknown ? Omit<T, "id"> : never;
 export type Question = WithoutId<SwitchRequest>;
 
 /** How long an answer may take, ms. Arming is the slowest: offer, answer and first sample. */
-const ANSWER_MS_MAX = 5000;
+const ANSWER_ms_MAX = 5000;
 
 /** What went wrong on the way to the switch, as opposed to a refusal by the judge. */
 export class SwitchSilent extends Error {
@@ -66,9 +66,9 @@ export class SwitchClient {
       const timer = setTimeout(() => {
         this.#waiting.delete(id);
         reject(
-          new SwitchSilent(`No answer to "${question.verb}" within ${ANSWER_MS_MAX / 1000} s.`),
+          new SwitchSilent(`No answer to "${question.verb}" within ${ANSWER_ms_MAX / 1000} s.`),
         );
-      }, ANSWER_MS_MAX);
+      }, ANSWER_ms_MAX);
       this.#waiting.set(id, { resolve, reject, timer });
       this.#socket.write(`${JSON.stringify({ id, ...question })}\n`);
     });

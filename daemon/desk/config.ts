@@ -42,4 +42,4 @@ export type FromDesk =
   | { readonly kind: "beat"; readonly clients: number }
   | { readonly kind: "failed"; readonly words: string };
 
-export const BEAT_MS = 1000;
+export const BEAT_ms = 1000;

@@ -4,11 +4,11 @@ import type { Snapshot, SwitchPush } from "../control/api.ts";
 /** Most pages at once; each costs main nothing, but the desk a little. */
 export const PAGES_MAX = 64;
 /** Shortest time between two snapshots to the pages, ms: ten a second at most. */
-const SNAPSHOT_MS_MIN = 100;
+const SNAPSHOT_ms_MIN = 100;
 /** A page with more than this unread gets no snapshot until it has caught up, bytes. */
 const UNREAD_BYTES_MAX = 64 * 1024;
 /** Pages that left without saying so are noticed by an unanswered ping, ms. */
-const PING_MS = 10_000;
+const PING_ms = 10_000;
 
 /** What a page gets over `/api/live`. */
 export type LivePush =
@@ -27,7 +27,7 @@ export class Live {
 
   constructor(now: () => number = () => performance.now()) {
     this.#now = now;
-    this.#ping = setInterval(() => this.#dropSilent(), PING_MS);
+    this.#ping = setInterval(() => this.#dropSilent(), PING_ms);
     this.#ping.unref();
   }
 
@@ -71,7 +71,7 @@ export class Live {
     const changed = push.snapshot.state !== this.#snapshot?.state;
     this.#snapshot = push.snapshot;
     const now = this.#now();
-    if (!changed && now - this.#sentAt < SNAPSHOT_MS_MIN - 1) return;
+    if (!changed && now - this.#sentAt < SNAPSHOT_ms_MIN - 1) return;
     this.#sentAt = now;
     this.#toAll(push);
   }

@@ -4,7 +4,7 @@ import { SwitchClient } from "../control/client.ts";
 import { pagesRoot } from "../paths.ts";
 import { toUnit } from "../physics/convert.ts";
 import { openReader } from "../record/reader.ts";
-import { BEAT_MS, DeskConfig, type FromDesk, ToDesk } from "./config.ts";
+import { BEAT_ms, DeskConfig, type FromDesk, ToDesk } from "./config.ts";
 import { Live } from "./live.ts";
 import { buildServer } from "./server.ts";
 import { readToken, SignIn } from "./sign-in.ts";
@@ -48,7 +48,7 @@ export async function runDesk(configText: string): Promise<void> {
   const { port } = app.server.address() as AddressInfo;
   sign.nameCookieFor(port);
   toParent({ kind: "listening", host: config.host, port });
-  setInterval(() => toParent({ kind: "beat", clients: live.pages }), BEAT_MS);
+  setInterval(() => toParent({ kind: "beat", clients: live.pages }), BEAT_ms);
 }
 
 /** The words of a failed start, for the daemon to print. */

@@ -7,13 +7,13 @@ const CHANNELS_MAX = 80;
 /** Widest picture asked for, pixels: a 5 K screen. */
 const PIXELS_MAX = 5200;
 /** Longest window in one question, ms: a year. */
-const WINDOW_MS_MAX = 366 * 24 * 3_600_000;
+const WINDOW_ms_MAX = 366 * 24 * 3_600_000;
 
 const time = z.coerce.number().min(0).max(8.64e15);
 const window = z
   .object({ from: time, to: time })
   .refine((w) => w.to > w.from, "to must be later than from")
-  .refine((w) => w.to - w.from <= WINDOW_MS_MAX, "a window is at most a year");
+  .refine((w) => w.to - w.from <= WINDOW_ms_MAX, "a window is at most a year");
 
 const SeriesParams = z.intersection(
   window,

@@ -3,11 +3,11 @@ import { chmodSync, closeSync, openSync, readFileSync, statSync, writeSync } fro
 import { parseCookie, stringifySetCookie } from "cookie";
 
 /** How long a code in an address can be used: long enough to walk to another window. */
-export const CODE_MS_MAX = 10 * 60_000;
+export const CODE_ms_MAX = 10 * 60_000;
 /** Codes waiting at once; more means that something prints addresses in a loop. */
 export const CODES_MAX = 16;
 /** A signed-in browser stays so for a month of nights. A new token ends all of them. */
-export const COOKIE_MS_MAX = 30 * 24 * 3_600_000;
+export const COOKIE_ms_MAX = 30 * 24 * 3_600_000;
 const TOKEN_BYTES = 32;
 const TOKEN_CHARS_MIN = 32;
 
@@ -69,10 +69,10 @@ export class SignIn {
     this.#cookieName = `beamsitter-${port}`;
   }
 
-  /** Makes a code usable once within CODE_MS_MAX. The oldest falls out beyond CODES_MAX. */
+  /** Makes a code usable once within CODE_ms_MAX. The oldest falls out beyond CODES_MAX. */
   offer(code: string): void {
     this.#codes.delete(code);
-    this.#codes.set(code, this.#now() + CODE_MS_MAX);
+    this.#codes.set(code, this.#now() + CODE_ms_MAX);
     for (const oldest of this.#codes.keys()) {
       if (this.#codes.size <= CODES_MAX) break;
       this.#codes.delete(oldest);
@@ -92,14 +92,14 @@ export class SignIn {
 
   /** The Set-Cookie header of a browser that has just signed in. */
   cookie(): string {
-    const until = this.#now() + COOKIE_MS_MAX;
+    const until = this.#now() + COOKIE_ms_MAX;
     return stringifySetCookie({
       name: this.#cookieName,
       value: `${until}.${this.#sign(until)}`,
       path: "/",
       httpOnly: true,
       sameSite: "strict",
-      maxAge: COOKIE_MS_MAX / 1000,
+      maxAge: COOKIE_ms_MAX / 1000,
     });
   }
 

@@ -7,7 +7,7 @@ import type { Loop } from "./loop.ts";
 import type { LoopAnswer } from "./ports.ts";
 
 /** How long an arming or a reset may take from asking to the board's answer, ms. */
-const EXCHANGE_MS_MAX = 4000;
+const EXCHANGE_ms_MAX = 4000;
 
 interface Pending {
   readonly id: number;
@@ -46,7 +46,7 @@ export class Asking {
     this.#loop.request(request.verb, value, request.asker as Asker, id, now);
     const { out } = this.#loop;
     if (out.answerId === id && out.answer === ANSWER.begun) {
-      this.#pending.push({ id, name: request.verb, until: now + EXCHANGE_MS_MAX, answer });
+      this.#pending.push({ id, name: request.verb, until: now + EXCHANGE_ms_MAX, answer });
       return;
     }
     answer(this.#made(request.verb, out.answer === ANSWER.done, value));
@@ -76,7 +76,7 @@ export class Asking {
     p.answer({
       ok: false,
       reason: "no-answer",
-      words: `The board did not carry out "${p.name}" within ${EXCHANGE_MS_MAX / 1000} s; the bench is ${STATES[view.state]}.`,
+      words: `The board did not carry out "${p.name}" within ${EXCHANGE_ms_MAX / 1000} s; the bench is ${STATES[view.state]}.`,
     });
     return true;
   }

@@ -10,7 +10,7 @@ export type Meant =
 /** Longest text that can be a current. */
 const TYPED_CHARS_MAX = 12;
 /** A page asks for whole milliamperes; the board's steps are coarser. */
-const STEP_MA = 1;
+const STEP_mA = 1;
 
 /** The typed current in mA. "1.75", "1,75", "1.75 A" and "1750 mA" are all the same. */
 export function typedCurrent(text: string): number | undefined {
@@ -18,7 +18,7 @@ export function typedCurrent(text: string): number | undefined {
   if (match === null || text.length > TYPED_CHARS_MAX) return undefined;
   const value = Number((match[1] ?? "").replace(",", "."));
   const current_mA = match[2]?.toLowerCase() === "ma" ? value : value * 1000;
-  return Math.round(current_mA / STEP_MA) * STEP_MA;
+  return Math.round(current_mA / STEP_mA) * STEP_mA;
 }
 
 const floorTo10 = (current_mA: number): number => Math.floor(current_mA / 10) * 10;

@@ -1,7 +1,7 @@
 import type { SwitchAnswer } from "../../daemon/desk/api.ts";
 
 /** A little more than the switch itself takes before it gives up, ms. */
-const ANSWER_MS_MAX = 7000;
+const ANSWER_ms_MAX = 7000;
 
 /** Posts one request to the desk. A silence comes back as a refusal in words. */
 export async function ask(address: string, body: unknown): Promise<SwitchAnswer> {
@@ -10,7 +10,7 @@ export async function ask(address: string, body: unknown): Promise<SwitchAnswer>
       method: "POST",
       headers: { "content-type": "application/json" },
       body: JSON.stringify(body),
-      signal: AbortSignal.timeout(ANSWER_MS_MAX),
+      signal: AbortSignal.timeout(ANSWER_ms_MAX),
     });
     return (await response.json()) as SwitchAnswer;
   } catch {

@@ -11,7 +11,7 @@ import { keepUnits } from "../words/format.ts";
 import { chosenSpan_min, cursor_at, events, staleWords, track } from "./state.ts";
 
 /** With reduced motion the past moves in steps of this length, ms. */
-const STEP_MS = 10_000;
+const STEP_ms = 10_000;
 const reduced = matchMedia("(prefers-reduced-motion: reduce)");
 
 /** Size of the page, followed as it changes. */
@@ -30,7 +30,7 @@ function useSize(): { width: number; height: number } {
 }
 
 function sceneNow(now: Snapshot, size: { width: number; height: number }): Scene {
-  const at = reduced.matches ? Math.floor(now.at / STEP_MS) * STEP_MS : now.at;
+  const at = reduced.matches ? Math.floor(now.at / STEP_ms) * STEP_ms : now.at;
   const first = track.rows[0]?.t ?? now.at;
   return sceneOf({
     layout: layoutFor(size.width, size.height),

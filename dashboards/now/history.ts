@@ -4,10 +4,10 @@ import { RECORDED, TRACK_MS } from "./track.ts";
 
 /** Entries asked for: about one in two seconds, finer than any screen's pixel of 40 minutes. */
 const PIXELS = 1400;
-const LOAD_MS_MAX = 15_000;
+const LOAD_ms_MAX = 15_000;
 
 async function get<T>(address: string): Promise<T | undefined> {
-  const response = await fetch(address, { signal: AbortSignal.timeout(LOAD_MS_MAX) });
+  const response = await fetch(address, { signal: AbortSignal.timeout(LOAD_ms_MAX) });
   return response.ok ? ((await response.json()) as T) : undefined;
 }
 

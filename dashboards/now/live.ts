@@ -4,11 +4,11 @@ import { loadHistory } from "./history.ts";
 import { addEvents, clock_ms, heard_ms, lineUp, signedOut, snapshot, track } from "./state.ts";
 
 /** Shortest time between two drawings, ms: digits that change faster cannot be read. */
-const DRAW_MS = 250;
+const DRAW_ms = 250;
 /** Pause before the page asks again after it lost the stream, ms. */
 const AGAIN_MS = 2000;
 /** No message at all for this long: the connection is given up and made anew, ms. */
-const SILENT_MS = 6000;
+const SILENT_ms = 6000;
 
 let newest: Snapshot | undefined;
 let drawn_ms = Number.NEGATIVE_INFINITY;
@@ -21,7 +21,7 @@ function take(s: Snapshot): void {
   track.append(s);
   newest = s;
   snapshot_ms = performance.now();
-  if (s.state !== snapshot.value?.state || snapshot_ms - drawn_ms >= DRAW_MS) draw();
+  if (s.state !== snapshot.value?.state || snapshot_ms - drawn_ms >= DRAW_ms) draw();
 }
 
 function draw(): void {
@@ -75,7 +75,7 @@ export function startLive(): void {
   setInterval(() => {
     clock_ms.value = performance.now();
     if (newest !== undefined && newest !== snapshot.value) draw();
-    if (socket !== undefined && performance.now() - life_ms > SILENT_MS) {
+    if (socket !== undefined && performance.now() - life_ms > SILENT_ms) {
       // A stopped desk closes nothing; a new connection finds the next one.
       const old = socket;
       socket = undefined;

@@ -25,7 +25,7 @@ export const chosenSpan_min = signal<number | undefined>(undefined);
 export const cursor_at = signal<number | undefined>(undefined);
 
 /** Without news for this long, numbers are not of now. */
-export const STALE_MS = 2000;
+export const STALE_ms = 2000;
 
 /** How long ago this page last heard of the bench, ms; 0 while it hears. */
 export const silence_ms = computed<number>(() => {
@@ -33,7 +33,7 @@ export const silence_ms = computed<number>(() => {
   if (s === undefined || heard_ms.value === undefined) return 0;
   const unheard = clock_ms.value - heard_ms.value;
   const boardSilent = s.state === "offline" ? 0 : (s.age_ms ?? 0);
-  return Math.max(unheard > STALE_MS ? unheard : 0, boardSilent > STALE_MS ? boardSilent : 0);
+  return Math.max(unheard > STALE_ms ? unheard : 0, boardSilent > STALE_ms ? boardSilent : 0);
 });
 
 /** Written over the hatched numbers; empty while they are of now. */

@@ -11,7 +11,7 @@ export interface Need {
 }
 
 /** Samples waiting to be written for longer than this are worth a word, ms. */
-const BEHIND_MS = 5000;
+const BEHIND_ms = 5000;
 
 const ended = (text: string): string => (/[.!?]$/.test(text) ? text : `${text}.`);
 const capital = (text: string): string => text.charAt(0).toUpperCase() + text.slice(1);
@@ -45,7 +45,7 @@ export function needsOf(now: Snapshot, silence_ms: number): Need[] {
   if (now.link.words !== "") {
     out.push({ key: "link", weight: "warn", words: ended(capital(now.link.words)) });
   }
-  if (now.recorder.behind_ms > BEHIND_MS || now.recorder.words !== "") {
+  if (now.recorder.behind_ms > BEHIND_ms || now.recorder.words !== "") {
     const behind = `The record is ${age(now.recorder.behind_ms)} behind.`;
     const words = now.recorder.words === "" ? behind : ended(capital(now.recorder.words));
     out.push({ key: "recorder", weight: "warn", words });

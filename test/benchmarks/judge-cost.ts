@@ -15,7 +15,7 @@ import { type Figure, median } from "./figure.ts";
 
 const SAMPLES = 200_000;
 const RUNS = 7;
-const PERIOD_MS = 20;
+const PERIOD_ms = 20;
 
 /** What the judge costs for each sample of an emitting bench: time, and heap that stays. */
 export function judgeCost(): Figure[] {
@@ -85,11 +85,11 @@ class EmittingBench {
   }
 
   #sample(set_counts: number, status: number): void {
-    this.#now_ms += PERIOD_MS;
+    this.#now_ms += PERIOD_ms;
     this.#begin(INPUT.sample);
     const { sample } = this.#input;
     sample.seq = (sample.seq + 1) >>> 0;
-    sample.tick = (sample.tick + PERIOD_MS) >>> 0;
+    sample.tick = (sample.tick + PERIOD_ms) >>> 0;
     sample.status = status | (set_counts > 0 ? STATUS.emitting : 0);
     sample.conversions = this.#conversions = (this.#conversions + 20) & 0xffff;
     const noise = (sample.seq * 7) % 3;

@@ -7,7 +7,7 @@ import type { EventLine, Snapshot } from "../../daemon/control/api.ts";
 export type Kind = "near" | "held" | "calm" | "tripped" | "standby";
 
 const MINUTES = 40;
-const STEP_S = 1;
+const STEP_s = 1;
 
 interface Moment {
   readonly t: number;
@@ -70,7 +70,7 @@ function moment(kind: Kind, at: number, second: number): Moment {
 /** Every second of the evening. */
 export function evening(kind: Kind, at: number): Moment[] {
   const out: Moment[] = [];
-  for (let s = 0; s <= MINUTES * 60; s += STEP_S) out.push(moment(kind, at, s));
+  for (let s = 0; s <= MINUTES * 60; s += STEP_s) out.push(moment(kind, at, s));
   return out;
 }
 

@@ -3,7 +3,7 @@ import { afterEach, describe, expect, test } from "vitest";
 import { seal } from "../../firmware-protocol/line.ts";
 import { type PtyBoard, startPtyBoard } from "./pty-board.ts";
 
-const ANSWER_MS = 5000;
+const ANSWER_ms = 5000;
 
 let board: PtyBoard | null = null;
 let port: SerialPort | null = null;
@@ -20,7 +20,7 @@ const heard = (from: SerialPort, wanted: RegExp): Promise<string> =>
     let text = "";
     const giveUp = setTimeout(
       () => reject(new Error(`${wanted} did not come; heard: ${text.slice(-300)}`)),
-      ANSWER_MS,
+      ANSWER_ms,
     );
     const onData = (bytes: Buffer): void => {
       text += bytes.toString("latin1");

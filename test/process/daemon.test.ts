@@ -9,8 +9,8 @@ import { Daemon, Place, runCli } from "./daemon.ts";
  * terminal, in wall-clock time. This is smoke: times are generous, because a busy machine stalls;
  * what is exact is tested in simulated time (test/hardware).
  */
-const LIGHT_MS = 30_000;
-const DARK_MS = 5_000;
+const LIGHT_ms = 30_000;
+const DARK_ms = 5_000;
 
 /**
  * The bare diode's own file, at this board's terminal, with a term of two seconds: a machine that is
@@ -24,10 +24,10 @@ const benchText = (path: string): string =>
 /** Resolves when the diode is dark, as measured at the diode; how long that took, ms. */
 async function untilDark(board: PtyBoard): Promise<number> {
   const began = performance.now();
-  while (performance.now() - began < DARK_MS) {
+  while (performance.now() - began < DARK_ms) {
     if (!(await board.state()).emitting) return performance.now() - began;
   }
-  throw new Error(`still lit after ${DARK_MS} ms`);
+  throw new Error(`still lit after ${DARK_ms} ms`);
 }
 
 describe("a daemon over a simulated board", () => {
@@ -57,7 +57,7 @@ describe("a daemon over a simulated board", () => {
 
   /** Clears whatever the test before left latched, then arms and waits for light. */
   async function light(): Promise<void> {
-    await daemon.until((s) => s.link.phase === "ready" && s.state !== "offline", LIGHT_MS);
+    await daemon.until((s) => s.link.phase === "ready" && s.state !== "offline", LIGHT_ms);
     const { cause } = await daemon.snapshot();
     if (cause !== null) {
       const reset = await daemon.client.ask({ verb: "reset", cause: cause.id, asker: "person" });
@@ -65,12 +65,12 @@ describe("a daemon over a simulated board", () => {
     }
     const armed = await daemon.client.ask({ verb: "arm", current_mA: 450, asker: "person" });
     expect(armed.ok, armed.words).toBe(true);
-    await daemon.until((s) => s.state === "emitting" && (s.current_mA ?? 0) > 400, LIGHT_MS);
+    await daemon.until((s) => s.state === "emitting" && (s.current_mA ?? 0) > 400, LIGHT_ms);
     expect((await board.state()).emitting).toBe(true);
   }
 
   test("a bench that is not the built-in one starts dark and stays dark until somebody arms it", async () => {
-    await daemon.until((s) => s.state === "standby", LIGHT_MS);
+    await daemon.until((s) => s.state === "standby", LIGHT_ms);
     const scripted = await daemon.client.ask({
       verb: "arm",
       current_mA: 600,
@@ -85,7 +85,7 @@ describe("a daemon over a simulated board", () => {
     await light();
     await daemon.client.ask({ verb: "dark", asker: "person" });
     await untilDark(board);
-    await daemon.until((s) => s.state === "standby", DARK_MS);
+    await daemon.until((s) => s.state === "standby", DARK_ms);
   });
 
   test("SIGTERM: dark, and tripped as stopped when the daemon comes back", async () => {
@@ -96,7 +96,7 @@ describe("a daemon over a simulated board", () => {
     const status = await runCli(place, "status");
     expect(status.code).toBe(3);
     daemon = await Daemon.start(place, "bare-diode", "--bench", `${place.folder}/bench.yaml`);
-    const s = await daemon.until((x) => x.state === "tripped", LIGHT_MS);
+    const s = await daemon.until((x) => x.state === "tripped", LIGHT_ms);
     expect(s.cause?.id).toBe("daemon-stopped");
   });
 
@@ -105,7 +105,7 @@ describe("a daemon over a simulated board", () => {
     await daemon.signal("SIGKILL");
     await untilDark(board);
     daemon = await Daemon.start(place, "bare-diode", "--bench", `${place.folder}/bench.yaml`);
-    const s = await daemon.until((x) => x.state === "tripped", LIGHT_MS);
+    const s = await daemon.until((x) => x.state === "tripped", LIGHT_ms);
     expect(["permit-expired", "host-restarted"]).toContain(s.cause?.id);
     expect((await board.state()).emitting).toBe(false);
   });
@@ -115,7 +115,7 @@ describe("a daemon over a simulated board", () => {
     daemon.child.kill("SIGSTOP");
     await untilDark(board);
     daemon.child.kill("SIGCONT");
-    const s = await daemon.until((x) => x.state === "tripped", LIGHT_MS);
+    const s = await daemon.until((x) => x.state === "tripped", LIGHT_ms);
     expect(s.cause).not.toBeNull();
     expect((await board.state()).emitting).toBe(false);
   });

@@ -3,9 +3,9 @@ import { tmpdir } from "node:os";
 import { join } from "node:path";
 import { afterEach, beforeEach, describe, expect, test } from "vitest";
 import {
-  CODE_MS_MAX,
+  CODE_ms_MAX,
   CODES_MAX,
-  COOKIE_MS_MAX,
+  COOKIE_ms_MAX,
   readToken,
   SignIn,
 } from "../../../daemon/desk/sign-in.ts";
@@ -26,9 +26,9 @@ describe("codes", () => {
     const sign = new SignIn(TOKEN, () => now);
     sign.offer("a-code-0000000000");
     sign.offer("b-code-0000000000");
-    now = CODE_MS_MAX;
+    now = CODE_ms_MAX;
     expect(sign.redeem("a-code-0000000000")).toBe(true);
-    now = CODE_MS_MAX + 1;
+    now = CODE_ms_MAX + 1;
     expect(sign.redeem("b-code-0000000000")).toBe(false);
   });
 
@@ -71,11 +71,11 @@ describe("cookies", () => {
     let now = 0;
     const sign = new SignIn(TOKEN, () => now);
     const cookie = pairOf(sign.cookie());
-    now = COOKIE_MS_MAX;
+    now = COOKIE_ms_MAX;
     expect(sign.proofOf({ cookie })).toBe("cookie");
-    now = COOKIE_MS_MAX + 1;
+    now = COOKIE_ms_MAX + 1;
     expect(sign.proofOf({ cookie })).toBeUndefined();
-    const later = cookie.replace(/=\d+/, `=${COOKIE_MS_MAX * 2}`);
+    const later = cookie.replace(/=\d+/, `=${COOKIE_ms_MAX * 2}`);
     expect(sign.proofOf({ cookie: later })).toBeUndefined();
   });
 

@@ -5,7 +5,7 @@ import { describe, expect, test } from "vitest";
 import { packageRoot } from "../../../daemon/paths.ts";
 
 /** A compiler under two sanitizers on a busy machine. */
-const COMPILE_MS = 180_000;
+const COMPILE_ms = 180_000;
 
 const core = join(packageRoot, "firmware-protocol", "c");
 
@@ -48,7 +48,7 @@ describe("the controller core, native, under ASan and UBSan", () => {
       expect(named(judged)).toEqual(named(vectors.map(wantedOf)));
       expect(judged.length).toBe(vectors.length);
     },
-    COMPILE_MS,
+    COMPILE_ms,
   );
 
   test(
@@ -57,6 +57,6 @@ describe("the controller core, native, under ASan and UBSan", () => {
       const closing = make("test").trimEnd().split("\n").at(-1) ?? "";
       expect(closing).toMatch(/^[1-9]\d* passed, 0 failed$/);
     },
-    COMPILE_MS,
+    COMPILE_ms,
   );
 });

@@ -14,7 +14,7 @@ export const wasmBytes = readFileSync(assetFile("firmware-protocol/wasm/controll
 const module = new WebAssembly.Module(wasmBytes);
 
 /** 25 degC on the built-in bench's case channel. */
-export const CASE_25_DEGC = 8191;
+export const CASE_25_degC = 8191;
 const SUPPLY_5_V = 10_000;
 const CURRENT_PER_SET = 25 / 8;
 const PERIOD_TICKS = 20;
@@ -34,7 +34,7 @@ export class TestBench {
 
   constructor(options: Partial<ControllerOptions> = {}, tick = 0) {
     this.tick = tick;
-    this.values[2] = CASE_25_DEGC;
+    this.values[2] = CASE_25_degC;
     this.values[8] = SUPPLY_5_V;
     this.controller = newController(module, { rate_perS: 50, jitter: 7, ...options });
     this.controller.boot("power", tick);

@@ -2,7 +2,7 @@ import { describe, expect, test } from "vitest";
 import { Chain, north } from "./bench.ts";
 
 /** The term and the fall of the stage: with a dead host, light ends within these. */
-const TERM_MS = north.controller.term_ms;
+const TERM_ms = north.controller.term_ms;
 const FALL_MS = 20;
 
 describe("the chain on a simulated clock", () => {
@@ -26,7 +26,7 @@ describe("the chain on a simulated clock", () => {
     const c = new Chain();
     c.light(1000);
     c.deaf = true;
-    expect(c.until(() => !c.lit, TERM_MS + FALL_MS)).toBeLessThanOrEqual(TERM_MS + FALL_MS);
+    expect(c.until(() => !c.lit, TERM_ms + FALL_MS)).toBeLessThanOrEqual(TERM_ms + FALL_MS);
     c.deaf = false;
     c.until(() => c.state === "tripped", 200);
     c.run(20_000);
