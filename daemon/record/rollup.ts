@@ -16,7 +16,7 @@ export const SECOND_COLUMN = 65535;
 export const rollupColumn = (column: number, kind: number): number => column + 256 * kind;
 
 /** n, min, sum, max and m2 (sum of squared differences from the mean) of stored counts. */
-export interface Stats {
+interface Stats {
   n: number;
   min: number;
   sum: number;
@@ -24,27 +24,13 @@ export interface Stats {
   m2: number;
 }
 
-export const noStats = (): Stats => ({
+const noStats = (): Stats => ({
   n: 0,
   min: Number.POSITIVE_INFINITY,
   sum: 0,
   max: Number.NEGATIVE_INFINITY,
   m2: 0,
 });
-
-/** Adds `b` to `a`, as if their values had been counted together. */
-export function mergeStats(a: Stats, b: Readonly<Stats>): void {
-  if (b.n === 0) return;
-  if (a.n > 0) {
-    const apart = b.sum / b.n - a.sum / a.n;
-    a.m2 += (apart * apart * a.n * b.n) / (a.n + b.n);
-  }
-  a.n += b.n;
-  a.sum += b.sum;
-  a.m2 += b.m2;
-  if (b.min < a.min) a.min = b.min;
-  if (b.max > a.max) a.max = b.max;
-}
 
 /** Rows of a block as the rollup reads them. */
 export interface RowSource {

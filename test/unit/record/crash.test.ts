@@ -1,4 +1,4 @@
-import { cpSync, rmSync } from "node:fs";
+import { cpSync } from "node:fs";
 import Database from "better-sqlite3";
 import { afterEach, describe, expect, test } from "vitest";
 import { wall } from "../../../daemon/model/times.ts";
@@ -30,10 +30,9 @@ function recordAndCopy(commits: number, look: (copy: string, rows: number) => vo
     recorder.drain();
     // Rows that nobody committed must not matter.
     for (let i = 0; i < 3; i++) recorder.take({ kind: "journal", entry: entry(-1 - i) });
-    const copy = `${folder}-copy`;
+    const copy = `${folder}-${commit}`;
     cpSync(folder, copy, { recursive: true });
     look(copy, rows);
-    rmSync(copy, { recursive: true });
   }
   recorder.close();
 }
@@ -50,8 +49,19 @@ const numbersOf = (folder: string, run: number): number[] => {
   return numbers;
 };
 
+/** Samples of one channel that the one-second rollups know of. */
+async function countRolled(folder: string): Promise<number> {
+  const reader = openReader(folder);
+  const window = { from: wall(START_ms), to: wall(START_ms + 100_000) };
+  const query = { bench: "north", channels: ["current"], window, pixels: 20 };
+  const { channels } = await reader.series(query);
+  reader.close();
+  return channels.current?.n.reduce((sum, n) => sum + n, 0) ?? 0;
+}
+
 describe("a folder as it stood after any commit", () => {
-  test("reopens with every sample committed, once, and records on", () => {
+  test("reopens with every sample committed, once, and records on", async () => {
+    const rolled: Promise<number>[] = [];
     recordAndCopy(35, (copy, rows) => {
       const wanted = Array.from({ length: rows }, (_, i) => i + 1);
       expect(numbersOf(copy, 1)).toEqual(wanted);
@@ -59,6 +69,7 @@ describe("a folder as it stood after any commit", () => {
       next.recorder.take({ kind: "event", event: event(1, "connected") });
       next.recorder.close();
       expect(numbersOf(copy, 1)).toEqual(wanted);
+      rolled.push(countRolled(copy));
       const db = new Database(`${copy}/record.sqlite`, { readonly: true });
       const count = (table: string): unknown =>
         db.prepare(`SELECT count(*) FROM ${table}`).pluck().get();
@@ -69,6 +80,7 @@ describe("a folder as it stood after any commit", () => {
       });
       db.close();
     });
+    expect(await Promise.all(rolled)).toEqual(rolled.map((_, i) => (i + 1) * ROWS_A_COMMIT));
   });
 
   test("a torn chunk is named, and the others are kept", () => {

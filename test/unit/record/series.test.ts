@@ -5,7 +5,6 @@ import type { SeriesAnswer, SeriesTrace } from "../../../daemon/model/series.ts"
 import { wall } from "../../../daemon/model/times.ts";
 import { type Converter, openReader, type RecordReader } from "../../../daemon/record/reader.ts";
 import { gapAfter_ms } from "../../../daemon/record/recorder.ts";
-import { mergeStats, noStats } from "../../../daemon/record/rollup.ts";
 import { MANIFEST, rowMaker, START_ms, seeded } from "./row-maker.ts";
 import { recordRows, scratchFolder } from "./synthetic.ts";
 
@@ -226,30 +225,4 @@ describe("series against every sample, one by one", () => {
     expect(names.slice(0, 6)).toEqual(MANIFEST.channels.map((c) => c.name));
     expect(names).toContain("judge.ceiling");
   });
-});
-
-test(`rollups merge as if counted together (seed ${seed})`, () => {
-  const stats = (values: readonly number[]) => {
-    const mean = values.reduce((a, b) => a + b, 0) / values.length;
-    return values.length === 0
-      ? noStats()
-      : {
-          n: values.length,
-          min: Math.min(...values),
-          sum: values.reduce((a, b) => a + b, 0),
-          max: Math.max(...values),
-          m2: values.reduce((sum, v) => sum + (v - mean) ** 2, 0),
-        };
-  };
-  const counts = fc.array(fc.integer({ min: -5000, max: 5000 }), { maxLength: 30 });
-  fc.assert(
-    fc.property(counts, counts, (a, b) => {
-      const merged = stats(a);
-      mergeStats(merged, stats(b));
-      const whole = stats([...a, ...b]);
-      expect(merged.m2).toBeCloseTo(whole.m2, 3);
-      expect({ ...merged, m2: 0 }).toEqual({ ...whole, m2: 0 });
-    }),
-    { seed },
-  );
 });
