@@ -210,3 +210,13 @@ export const emittingBoard = async (aim = 700, term = TERM): Promise<Host> => {
   await world.pass(100);
   return host;
 };
+
+/** Runs a test on an emitting board of its own, and leaves no process behind. */
+export const onBoard = async (act: (host: Host) => Promise<void>): Promise<void> => {
+  const host = await emittingBoard();
+  try {
+    await act(host);
+  } finally {
+    host.world.stop();
+  }
+};
