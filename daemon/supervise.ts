@@ -1,10 +1,11 @@
-import type { Snapshot, SwitchAnswer, SwitchRequest } from "./control/api.ts";
+import type { EventLine, Snapshot, SwitchAnswer, SwitchRequest } from "./control/api.ts";
 import { type DarkPort, serveDarkPort } from "./control/dark-port.ts";
 import { type Switch, serveSwitch } from "./control/switch.ts";
 import { Reconnect } from "./link/transports/reconnect.ts";
 import type { Transport } from "./link/transports/transport.ts";
 import { Asking } from "./loop/asking.ts";
 import { Loop, type Received } from "./loop/loop.ts";
+import { meaningOf } from "./loop/meaning.ts";
 import type { Curve, LoopAnswer } from "./loop/ports.ts";
 import { snapshotOf } from "./loop/snapshot.ts";
 import type { Bench } from "./model/bench.ts";
@@ -36,6 +37,8 @@ export interface SuperviseOptions {
   sign(): string | null;
   /** A changed bench file is in use. */
   adopted(bench: Bench): void;
+  /** Something happened, in words; must not wait for whoever reads them. */
+  event(line: EventLine): void;
   /** A program asked the daemon to end. */
   stop(): void;
 }
@@ -53,6 +56,7 @@ export class Supervision {
   #scheduled = false;
   #switch: Switch | null = null;
   readonly #darkPorts: DarkPort[] = [];
+  readonly #toldOfPort = new Set<string>();
   readonly #timers: NodeJS.Timeout[] = [];
 
   private constructor(options: SuperviseOptions) {
@@ -65,7 +69,10 @@ export class Supervision {
         write: (line) => this.#link?.write(line) ?? false,
         drained: () => this.#link?.drained ?? false,
         record: (message) => options.record(message),
-        event: (event) => this.#switch?.push({ push: "event", event }),
+        event: (event) => {
+          this.#switch?.push({ push: "event", event });
+          options.event(event);
+        },
         curve: (bench, manifest) => options.curve(bench, manifest),
       },
       options.ring,
@@ -127,6 +134,7 @@ export class Supervision {
     return snapshotOf(this.loop, {
       wall_ms: Date.now(),
       now_ms: now(),
+      port: this.#link?.trouble() ?? "",
       recorder: this.#options.recorder(),
     });
   }
@@ -160,9 +168,23 @@ export class Supervision {
   }
 
   #show(): void {
+    this.#tellPort();
     const toWatchers = this.#switch;
     if (toWatchers !== null && toWatchers.watchers > 0) {
       toWatchers.push({ push: "snapshot", snapshot: this.snapshot() });
+    }
+  }
+
+  /** A port that does not come, or goes, is told once for each reason, until lines come again. */
+  #tellPort(): void {
+    const { why, tries, state } = this.#link?.status ?? { why: "", tries: 0, state: "open" };
+    if (state === "open" && tries === 0) this.#toldOfPort.clear();
+    else if (why !== "") {
+      // Seconds and counts within a reason differ from try to try.
+      const reason = why.replace(/[\d.]+/g, "");
+      if (this.#toldOfPort.has(reason)) return;
+      this.#toldOfPort.add(reason);
+      this.loop.telling.say("link", "port", why, "warn", null, 0, 0);
     }
   }
 
@@ -178,6 +200,9 @@ export class Supervision {
       case "status":
       case "watch":
         say({ ok: true, reason: "", words: "", snapshot: this.snapshot() });
+        break;
+      case "mean":
+        say(meaningOf(this.loop, request.current_mA));
         break;
       case "rawlog":
         say({ ok: true, reason: "", words: "", lines: this.loop.session.log.words() });
@@ -207,29 +232,50 @@ export class Supervision {
 
   #adopt(text: string, confirm: boolean): LoopAnswer {
     const { bench, lines } = this.#options.read(text);
-    if (bench === null) {
-      return { ok: false, reason: "form", words: "This file cannot be used:", lines: [...lines] };
-    }
+    if (bench === null) return form("This file cannot be used:", lines);
     const own = this.loop.bench;
     if (bench.name !== own.name) {
-      const words = `This file describes "${bench.name}"; this daemon runs "${own.name}".`;
-      return { ok: false, reason: "form", words };
+      return form(`This file describes "${bench.name}"; this daemon runs "${own.name}".`);
     }
     const differences = [...this.#options.differences(own, bench)];
     if (differences.length === 0) {
       return { ok: true, reason: "", words: "Nothing differs from the file in use.", lines: [] };
     }
-    if (!confirm) return { ok: true, reason: "", words: "What would change:", lines: differences };
+    const misfit = this.#misfit(bench, differences);
+    if (misfit !== null) return misfit;
     const { state } = this.snapshot();
     if (state === "armed" || state === "emitting") {
       const words = `${own.name} is ${state}; a bench file is adopted only while dark.`;
       return { ok: false, reason: "not-standby", words, lines: differences };
     }
+    if (!confirm) return { ok: true, reason: "", words: "What would change:", lines: differences };
     this.loop.adopt(bench, text, now());
     this.#options.adopted(bench);
-    this.loop.telling.say("adopted", "", `Adopted: ${differences.join("; ")}`, "calm", null, 0, 0);
-    return { ok: true, reason: "", words: "Adopted.", lines: differences };
+    this.loop.telling.say("adopted", "", `Adopted: ${differences.join(" ")}`, "calm", null, 0, 0);
+    return { ok: true, reason: "", words: `${own.name} uses this file now.`, lines: differences };
+  }
+
+  /** Why a changed file, sound in itself, cannot be taken into use by this daemon on this board. */
+  #misfit(bench: Bench, differences: readonly string[]): LoopAnswer | null {
+    const atStart = differences.filter((line) => AT_START.test(line));
+    if (atStart.length > 0) {
+      return form("These change only when the daemon starts; end it and run it again:", atStart);
+    }
+    const { manifest } = this.loop.session;
+    const curve = manifest === null ? null : this.#options.curve(bench, manifest);
+    if (curve === null || !("problems" in curve)) return null;
+    return form("This file does not fit the board that is connected:", curve.problems);
   }
 }
+
+/** Places in a bench file that decide how the daemon connects. */
+const AT_START = /^controller\.(connect|board|rate) /;
+
+const form = (words: string, lines: readonly string[] = []): LoopAnswer => ({
+  ok: false,
+  reason: "form",
+  words,
+  lines: [...lines],
+});
 
 const now = (): Mono_ms => mono(performance.now());

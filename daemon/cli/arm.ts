@@ -1,30 +1,57 @@
-import { Command } from "commander";
-import { formatQuantity } from "../model/quantities.ts";
-import { askAndTell, confirm } from "./ask.ts";
-import { currentOf } from "./currents.ts";
+import type { Command } from "commander";
+import { ask, confirm, tell } from "./ask.ts";
+import { type DaemonOptions, daemonCommandOf } from "./command.ts";
 import { EXIT, print, Trouble } from "./say.ts";
-import { reach } from "./where.ts";
+import { currentOf } from "./values.ts";
+import { pickNotice } from "./where.ts";
+
+interface Options extends DaemonOptions {
+  readonly confirm?: string;
+}
 
 /** `arm CURRENT`: the one command that leads to light, so it reads back before it asks. */
 export const armCommand = (): Command =>
-  new Command("arm")
-    .description("arm the bench: after the emission delay, light at this current")
-    .argument("<current>", "the current you mean, with its unit: 1.2A")
-    .option("--on <name>", "which bench, where several run")
+  daemonCommandOf(
+    "arm",
+    "arm the bench: after the emission delay, light at this current",
+    ["arm 1.2A", "arm 1.2 A --on north", "arm 900mA --confirm 900mA --json"],
+    "Tells what that current means just now, then asks for it a second time.",
+  )
+    .argument("<current...>", "the current you mean, with its unit")
     .option("--confirm <current>", "the same current again, for scripts")
-    .option("--json", "the answer as one JSON object")
-    .addHelpText("after", "\nExample:\n  beamsitter arm 1.2A")
-    .action(async (text: string, options: { on?: string; confirm?: string; json?: boolean }) => {
-      const current_mA = currentOf(text);
-      const { client, notice } = await reach(options.on);
-      const { snapshot } = await client.ask({ verb: "status" });
-      client.close();
-      if (snapshot === undefined)
-        throw new Trouble("The daemon tells no state.", "Try again.", EXIT.absent);
-      if (options.json !== true) print(snapshot.safety);
-      const shown = formatQuantity("current", current_mA);
-      const sentence = `${notice.bench} will be armed at ${shown}; light starts after the emission delay.`;
-      await confirm(sentence, text, options.confirm);
-      const asker = options.confirm === undefined ? "person" : "script";
-      await askAndTell(notice.bench, { verb: "arm", current_mA, asker }, options.json);
-    });
+    .action(arm);
+
+async function arm(words: readonly string[], options: Options): Promise<void> {
+  const current_mA = currentOf(words);
+  // The bench is chosen once: between reading and typing another one may be started.
+  const { bench } = pickNotice(options.on);
+  const { snapshot } = await ask(bench, { verb: "status" });
+  if (snapshot === undefined) {
+    throw new Trouble("The daemon tells no state.", "Try again.", EXIT.absent);
+  }
+  const meant = await ask(bench, { verb: "mean", current_mA });
+  if (!meant.ok) {
+    tell(meant, options);
+    return;
+  }
+  if (options.json !== true) {
+    print(snapshot.safety);
+    print(meant.words);
+  }
+  const same = (text: string): boolean => currentOf([text]) === current_mA;
+  await confirm({ wanted: words.join(" "), given: options.confirm, same: orNot(same) });
+  const asker = options.confirm === undefined ? "person" : "script";
+  tell(await ask(bench, { verb: "arm", current_mA, asker }), options);
+}
+
+/** What is no current at all is not the same current either. */
+const orNot =
+  (same: (text: string) => boolean) =>
+  (text: string): boolean => {
+    try {
+      return same(text);
+    } catch (error) {
+      if (error instanceof Trouble) return false;
+      throw error;
+    }
+  };

@@ -1,43 +1,47 @@
-import { Command } from "commander";
+import type { Command } from "commander";
 import { SwitchClient } from "../control/client.ts";
+import { Darkened } from "./answers.ts";
+import { type DaemonOptions, daemonCommandOf } from "./command.ts";
 import { EXIT, print, printJson, reasonOf } from "./say.ts";
-import { isAlive, type Notice, notices } from "./where.ts";
+import { lives, type Notice, notices } from "./where.ts";
 
 /** How long switch and dark port may take before the daemon itself is ended, ms. */
 const WAY_MS_MAX = 700;
 
-type Told = {
-  bench: string;
-  ok: boolean;
-  way: "switch" | "dark port" | "daemon ended";
-  words: string;
-};
-
 /**
- * `dark`: three ways, each simpler than the one before; the first two at once. Without `--on` every running bench goes dark:
- * at that moment nobody wants to be asked which.
+ * `dark`: three ways, each simpler than the one before; the first two at once. Without `--on` every
+ * running bench goes dark: at that moment nobody wants to be asked which.
  */
 export const darkCommand = (): Command =>
-  new Command("dark")
-    .description("cut the light now; without --on, of every running bench")
-    .option("--on <name>", "only this bench")
-    .option("--json", "what was done, as one JSON object")
-    .addHelpText("after", "\nExample:\n  beamsitter dark")
-    .action(async (options: { on?: string; json?: boolean }) => {
-      const meant = notices().filter((n) => options.on === undefined || n.bench === options.on);
-      const told = await Promise.all(meant.filter((n) => isAlive(n.pid)).map(darken));
-      if (options.json === true) printJson({ benches: told });
-      else if (told.length === 0) {
-        print(
-          "No daemon runs here, so none sends permits; a board without them is dark by itself.",
-        );
-        print("Whether some other computer drives the bench is not known here: go and look.");
-      } else for (const t of told) print(`${t.bench}: ${t.words}`);
-      process.exitCode =
-        told.length === 0 ? EXIT.absent : told.every((t) => t.ok) ? EXIT.done : EXIT.refused;
-    });
+  daemonCommandOf(
+    "dark",
+    "cut the light now; without --on, of every running bench",
+    ["dark", "dark --on north --json"],
+    "Where the daemon answers on neither of its two ways, it is ended: without its permits the board\ngoes dark by itself.",
+  ).action(dark);
 
-async function darken(notice: Notice): Promise<Told> {
+async function dark(options: DaemonOptions): Promise<void> {
+  const running = notices().filter(lives);
+  const meant = running.filter((n) => options.on === undefined || n.bench === options.on);
+  const benches = await Promise.all(meant.map(darken));
+  if (options.json === true) printJson(Darkened, { benches });
+  else if (benches.length === 0) for (const line of nobodyWords(options.on, running)) print(line);
+  else for (const told of benches) print(`${told.bench}: ${told.words}`);
+  process.exitCode =
+    benches.length === 0 ? EXIT.absent : benches.every((t) => t.ok) ? EXIT.done : EXIT.refused;
+}
+
+function nobodyWords(on: string | undefined, running: readonly Notice[]): string[] {
+  const lines =
+    on === undefined
+      ? ["No daemon runs here, so none sends permits; a board without them is dark by itself."]
+      : [`No daemon runs here for a bench named "${on}"; nothing was done.`];
+  if (running.length > 0) lines.push(`Running now: ${running.map((n) => n.bench).join(", ")}.`);
+  lines.push("Whether some other computer drives the bench is not known here: go and look.");
+  return lines;
+}
+
+async function darken(notice: Notice): Promise<Darkened> {
   const { bench } = notice;
   // Both at once: a dark too many does no harm, and nobody waits for the way that is stuck.
   const ways = [
@@ -61,7 +65,7 @@ async function askPort(notice: Notice): Promise<string> {
 }
 
 /** What the quicker way said, or null where neither answered in time: then the daemon is ended. */
-async function within(way: Promise<Told>): Promise<Told | null> {
+async function within(way: Promise<Darkened>): Promise<Darkened | null> {
   let timer: NodeJS.Timeout | undefined;
   const late = new Promise<null>((resolve) => {
     timer = setTimeout(() => resolve(null), WAY_MS_MAX);
@@ -71,7 +75,7 @@ async function within(way: Promise<Told>): Promise<Told | null> {
   return told;
 }
 
-function endDaemon(notice: Notice): Told {
+function endDaemon(notice: Notice): Darkened {
   const base = { bench: notice.bench, way: "daemon ended" as const };
   try {
     process.kill(notice.pid, "SIGKILL");

@@ -17,6 +17,7 @@ import { Ring, ringBytes } from "../model/ring.ts";
 import { wall } from "../model/times.ts";
 import { assetFile } from "../paths.ts";
 import { Recorder } from "../record/recorder.ts";
+import type { NightSummary } from "./answers.ts";
 import { NORTH, readBenchText } from "./bench-text.ts";
 import { progress } from "./say.ts";
 
@@ -27,19 +28,6 @@ export interface NightOptions {
   readonly folder: string | null;
   /** Sixty times as fast as life instead of as fast as possible. */
   readonly paced: boolean;
-}
-
-/** What a night came to; the answer of `demo --json`. */
-export interface NightSummary {
-  simulatedSeconds: number;
-  samples: number;
-  sessions: number;
-  trips: { firstOut: string; atSeconds: number }[];
-  warnings: number;
-  cappedSeconds: number;
-  highestCaseC: number;
-  wallSeconds: number;
-  seed: number;
 }
 
 /** Samples per second of a simulated night, and length of one step of board and loop, ms. */
@@ -190,6 +178,7 @@ class Night {
       snapshotOf(this.#loop, {
         wall_ms: this.#lockstep.wall(),
         now_ms: this.#lockstep.now(),
+        port: "",
         recorder: { behind_ms: 0, words: "" },
       }),
     );

@@ -8,8 +8,9 @@ import { reasonOf } from "./say.ts";
 
 /** A desk that has not told that it lives for this long is ended and started anew, ms. */
 const SILENCE_ms_MAX = 5000;
-/** Pause before a desk that ended is started again, ms. */
-const AGAIN_MS = 500;
+/** Pause before a desk that ended is started again, ms: doubled each time until it listens. */
+const AGAIN_MS_MIN = 500;
+const AGAIN_MS_MAX = 30_000;
 /** Less favoured than the judging thread by this much (nice). */
 const NICE = 10;
 
@@ -25,7 +26,10 @@ export class DeskProcess {
   #heard_ms = 0;
   #ended = false;
   readonly #watch: NodeJS.Timeout;
-  #ready: (() => void)[] = [];
+  #again_ms = AGAIN_MS_MIN;
+  /** What was told last; the same is not told again until the desk has listened. */
+  #told = "";
+  #ready: ((failed: string) => void)[] = [];
 
   constructor(config: DeskConfig, onWords: (words: string) => void) {
     this.#config = config;
@@ -35,9 +39,9 @@ export class DeskProcess {
     this.#watch = setInterval(() => this.#look(), 1000);
   }
 
-  /** Resolves when the desk listens for the first time, or has failed for good. */
-  listening(): Promise<void> {
-    if (this.#heard_ms > 0) return Promise.resolve();
+  /** Resolves when the desk listens, with nothing; or when it could not, with the reason. */
+  listening(): Promise<string> {
+    if (this.#heard_ms > 0) return Promise.resolve("");
     return new Promise((resolve) => this.#ready.push(resolve));
   }
 
@@ -59,7 +63,9 @@ export class DeskProcess {
   }
 
   address(): string {
-    const host = this.#config.host.includes(":") ? `[${this.#config.host}]` : this.#config.host;
+    const given = this.#config.host;
+    const everywhere = given === "0.0.0.0" || given === "::";
+    const host = everywhere ? "127.0.0.1" : given.includes(":") ? `[${given}]` : given;
     return `http://${host}:${this.#port}/`;
   }
 
@@ -84,26 +90,42 @@ export class DeskProcess {
       {
         stdio: ["ignore", "ignore", "inherit", "ipc"],
         execArgv: ["--single-threaded-gc"],
+        // Ctrl-C at the terminal is for the daemon, which then ends its desk.
+        detached: true,
       },
     );
     this.#child = child;
     this.#heard_ms = 0;
     if (child.pid !== undefined) this.#lower(child.pid);
     child.on("message", (message) => this.#heard(message as FromDesk));
-    child.on("error", (error) => this.#onWords(`The desk did not start: ${error.message}.`));
-    child.on("exit", () => {
-      if (this.#ended) return;
-      this.#child = null;
-      this.#onWords("The desk ended and is started again; judge and record go on.");
-      setTimeout(() => this.#ended || this.#start(), AGAIN_MS);
-    });
+    child.on("error", (error) => this.#tell(`The desk did not start: ${error.message}.`));
+    child.on("exit", () => this.#gone());
+  }
+
+  #gone(): void {
+    if (this.#ended) return;
+    this.#child = null;
+    this.#tell("The desk ended and is started again; judge and record go on.");
+    this.#settle("it ended before it listened");
+    setTimeout(() => this.#ended || this.#start(), this.#again_ms);
+    this.#again_ms = Math.min(AGAIN_MS_MAX, this.#again_ms * 2);
+  }
+
+  #tell(words: string): void {
+    if (this.#told === words) return;
+    this.#told = words;
+    this.#onWords(words);
+  }
+
+  #settle(failed: string): void {
+    for (const ready of this.#ready.splice(0)) ready(failed);
   }
 
   #lower(pid: number): void {
     try {
       setPriority(pid, NICE);
     } catch (error) {
-      this.#onWords(`The desk's priority could not be lowered: ${reasonOf(error)}.`);
+      this.#tell(`The desk's priority could not be lowered: ${reasonOf(error)}.`);
     }
   }
 
@@ -111,16 +133,18 @@ export class DeskProcess {
     this.#heard_ms = performance.now();
     if (message.kind === "listening") {
       this.#port = message.port;
-      for (const ready of this.#ready.splice(0)) ready();
+      this.#again_ms = AGAIN_MS_MIN;
+      this.#told = "";
+      this.#settle("");
     } else if (message.kind === "failed") {
-      this.#onWords(message.words);
-      for (const ready of this.#ready.splice(0)) ready();
+      this.#tell(`The desk did not start: ${message.words}`);
+      this.#settle(message.words);
     }
   }
 
   #look(): void {
     if (this.#heard_ms === 0 || performance.now() - this.#heard_ms < SILENCE_ms_MAX) return;
-    this.#onWords("The desk hangs and is ended; judge and record go on.");
+    this.#tell("The desk hangs and is ended; judge and record go on.");
     this.#child?.kill("SIGKILL");
   }
 }

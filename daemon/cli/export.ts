@@ -1,18 +1,20 @@
 import { createWriteStream } from "node:fs";
 import { Readable } from "node:stream";
 import { pipeline } from "node:stream/promises";
-import { Command } from "commander";
+import type { Command } from "commander";
 import { parseBench } from "../bench-file/parse.ts";
 import type { Channel } from "../model/manifest.ts";
 import { toUnit } from "../physics/convert.ts";
 import { exportCsv } from "../record/export.ts";
 import { RecordProblem } from "../record/problem.ts";
 import { openReader, type RecordReader } from "../record/reader.ts";
-import { EXIT, printJson, reasonOf, Trouble } from "./say.ts";
-import { dataFolder } from "./where.ts";
+import { Sessions } from "./answers.ts";
+import { commandOf } from "./command.ts";
+import { codeOf, EXIT, printJson, reasonOf, Trouble } from "./say.ts";
+import { recordFolder } from "./where.ts";
 
 interface Options {
-  readonly on: string;
+  readonly on?: string;
   readonly data?: string;
   readonly session?: string;
   readonly from?: string;
@@ -24,10 +26,13 @@ interface Options {
 
 /** `export FILE`: the record as CSV, at full rate; or the list of sessions as JSON. */
 export const exportCommand = (): Command =>
-  new Command("export")
-    .description("write the record as CSV, at full rate, also while the daemon runs")
+  commandOf("export", "write the record as CSV, at full rate, also while the daemon runs", [
+    "export night.csv --session 4",
+    "export --on north --json",
+    "export - --channels current,case --from 2026-12-01T22:00Z --to 2026-12-02T06:00Z",
+  ])
     .argument("[file]", "where to write; - or nothing is standard output")
-    .option("--on <name>", "which bench's record", "north")
+    .option("--on <name>", "which bench's record, where there are several")
     .option("--data <folder>", "the data folder, where it is not the usual one")
     .option("--session <number>", "only this session; --json lists their numbers")
     .option("--from <time>", "from this moment, 2026-12-01T22:00Z")
@@ -35,14 +40,13 @@ export const exportCommand = (): Command =>
     .option("--channels <names>", "names with commas between, current,case,judge.ceiling")
     .option("--units-line", "units on a second header line instead of in brackets")
     .option("--json", "the sessions as one JSON array, instead of samples")
-    .addHelpText("after", "\nExample:\n  beamsitter export night.csv --session 4")
     .action((file: string | undefined, options: Options) => exportRecord(file ?? "-", options));
 
 async function exportRecord(file: string, options: Options): Promise<void> {
-  const reader = openOrSay(options.data ?? dataFolder(options.on));
+  const reader = openOrSay(options.data ?? recordFolder(options.on));
   try {
     if (options.json === true) {
-      printJson(reader.sessions());
+      printJson(Sessions, reader.sessions());
       return;
     }
     const lines = exportCsv(reader, {
@@ -57,6 +61,8 @@ async function exportRecord(file: string, options: Options): Promise<void> {
     for (const fault of reader.faults) process.stderr.write(`Left out: ${fault}\n`);
   } catch (error) {
     if (error instanceof Trouble) throw error;
+    // Whoever read the samples has seen enough.
+    if (file === "-" && codeOf(error) === "EPIPE") return;
     throw new Trouble(`The export stopped: ${reasonOf(error)}.`, "Nothing of the record changed.");
   } finally {
     reader.close();

@@ -1,60 +1,14 @@
-import { Command } from "commander";
-import { adoptCommand } from "./adopt.ts";
-import { armCommand } from "./arm.ts";
-import { checkCommand } from "./check.ts";
-import { darkCommand } from "./dark.ts";
-import { demoCommand } from "./demo.ts";
-import { exportCommand } from "./export.ts";
-import { listenCommand } from "./listen.ts";
-import { openCommand } from "./open.ts";
-import { portsCommand } from "./ports.ts";
-import { resetCommand } from "./reset.ts";
-import { runCommand } from "./run.ts";
-import { EXIT, Trouble } from "./say.ts";
-import { setCommand } from "./set.ts";
-import { statusCommand } from "./status.ts";
+import { Failed } from "./answers.ts";
+import { makeProgram } from "./program.ts";
+import { codeOf, EXIT, jsonLine, reasonOf, Trouble } from "./say.ts";
 
-const program = new Command("beamsitter")
-  .description(
-    "Supervises a bench laser built round a laser diode: limits, watches, records, explains.\n" +
-      "Not a certified safety function: hardware interlocks and your laser safety officer come first.",
-  )
-  .helpCommand("help [command]", "explain a command")
-  .showHelpAfterError("(beamsitter --help lists the commands)")
-  .addHelpText(
-    "after",
-    `
-Exit codes: 0 done, 1 refused or a problem found, 2 command line, 3 no daemon, 4 port, folder or file.
-
-Examples:
-  beamsitter check bench.yaml          is the bench file sound, and what would be wiser
-  beamsitter run --bench bench.yaml    supervise it, in the foreground
-  beamsitter arm 1.2A                  light on, deliberately
-  beamsitter dark                      light off, now`,
-  )
-  .exitOverride();
-
-for (const command of [
-  checkCommand(),
-  runCommand(),
-  demoCommand(),
-  openCommand(),
-  statusCommand(),
-  armCommand(),
-  setCommand(),
-  darkCommand(),
-  resetCommand(),
-  adoptCommand(),
-  portsCommand(),
-  listenCommand(),
-  exportCommand(),
-]) {
-  command.exitOverride();
-  program.addCommand(command);
-}
+// Whoever read our output has gone (`| head`): there is nobody left to tell, and that is no error.
+process.stdout.on("error", (error) => {
+  if (codeOf(error) !== "EPIPE") process.stderr.write(`Output stopped: ${reasonOf(error)}\n`);
+});
 
 try {
-  await program.parseAsync(process.argv);
+  await makeProgram().parseAsync(process.argv);
 } catch (error) {
   process.exitCode = report(error);
 }
@@ -63,11 +17,16 @@ try {
 function report(error: unknown): number {
   if (error instanceof Trouble) {
     process.stderr.write(`${error.message}\n${error.remedy}\n`);
+    if (process.argv.includes("--json")) {
+      const { message: words, remedy, exit } = error;
+      const failed = { ok: false, reason: "trouble", words, do: remedy, exit } as const;
+      process.stdout.write(`${jsonLine(Failed, failed)}\n`);
+    }
     return error.exit;
   }
   // commander has already written its own sentence; help and version are no errors.
-  const code = (error as { code?: unknown } | null)?.code;
-  if (typeof code === "string" && code.startsWith("commander.")) {
+  const code = codeOf(error);
+  if (code.startsWith("commander.")) {
     return code === "commander.help" || code === "commander.helpDisplayed" ? EXIT.done : EXIT.usage;
   }
   throw error;

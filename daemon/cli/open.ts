@@ -1,21 +1,19 @@
-import { Command } from "commander";
+import type { Command } from "commander";
+import { Opened } from "./answers.ts";
+import { ask } from "./ask.ts";
+import { type DaemonOptions, daemonCommandOf } from "./command.ts";
 import { EXIT, print, printJson, Trouble } from "./say.ts";
-import { reach } from "./where.ts";
 
 /** `open`: an address with a one-time code that signs a page in. */
 export const openCommand = (): Command =>
-  new Command("open")
-    .description("print an address that signs a page in, once, within ten minutes")
-    .option("--on <name>", "which bench, where several run")
-    .option("--json", "the address as one JSON object")
-    .addHelpText("after", "\nExample:\n  beamsitter open")
-    .action(async (options: { on?: string; json?: boolean }) => {
-      const { client } = await reach(options.on);
-      const answer = await client.ask({ verb: "sign" });
-      client.close();
-      if (answer.address === undefined) {
-        throw new Trouble(answer.words, "Look at beamsitter status, then try again.", EXIT.absent);
-      }
-      if (options.json === true) printJson({ address: answer.address });
-      else print(answer.address);
-    });
+  daemonCommandOf("open", "print an address that signs a page in, once, within ten minutes", [
+    "open",
+    "open --on north --json",
+  ]).action(async (options: DaemonOptions) => {
+    const { address, words } = await ask(options.on, { verb: "sign" });
+    if (address === undefined) {
+      throw new Trouble(words, "Look at beamsitter status, then try again.", EXIT.absent);
+    }
+    if (options.json === true) printJson(Opened, { address });
+    else print(address);
+  });

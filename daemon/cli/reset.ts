@@ -1,14 +1,15 @@
-import { Command } from "commander";
+import type { Command } from "commander";
 import { askAndTell } from "./ask.ts";
+import { type DaemonOptions, daemonCommandOf } from "./command.ts";
 
 /** `reset CAUSE`: takes the latch off, by naming what it was. */
 export const resetCommand = (): Command =>
-  new Command("reset")
-    .description("clear a trip by naming its cause, as status tells it; leaves the bench dark")
+  daemonCommandOf(
+    "reset",
+    "clear a trip by naming its cause, as status tells it; leaves the bench dark",
+    ["reset permit-expired", "reset case-over --on north"],
+  )
     .argument("<cause>", "identifier of the cause, for instance case-over")
-    .option("--on <name>", "which bench, where several run")
-    .option("--json", "the answer as one JSON object")
-    .addHelpText("after", "\nExample:\n  beamsitter reset permit-expired")
-    .action((cause: string, options: { on?: string; json?: boolean }) =>
-      askAndTell(options.on, { verb: "reset", cause, asker: "person" }, options.json),
+    .action((cause: string, options: DaemonOptions) =>
+      askAndTell(options, { verb: "reset", cause, asker: "person" }),
     );

@@ -1,4 +1,4 @@
-import { existsSync, rmSync } from "node:fs";
+import { rmSync } from "node:fs";
 import { join } from "node:path";
 import { makeCurve } from "../bench-file/curve.ts";
 import { differences } from "../bench-file/describe.ts";
@@ -6,161 +6,94 @@ import { parseBench } from "../bench-file/parse.ts";
 import { problemLines } from "../bench-file/report.ts";
 import { ScriptedPerson } from "../bench-sim/scripted-person.ts";
 import { SwitchClient } from "../control/client.ts";
-import { JUDGE_VERSION } from "../judge/records.ts";
 import type { Bench } from "../model/bench.ts";
 import { Ring, ringBytes } from "../model/ring.ts";
-import { RecorderClient } from "../record/client.ts";
-import { RecordProblem } from "../record/problem.ts";
 import { Supervision } from "../supervise.ts";
+import { addressTrouble, darkHosts, wantPort } from "./addresses.ts";
 import { loadBench } from "./bench-text.ts";
 import { DeskProcess } from "./desk-process.ts";
-import { codeOf, EXIT, print, reasonOf, Trouble } from "./say.ts";
+import { BY_PERSON, Ending, HOST_DEFECT } from "./ending.ts";
+import { type Recording, startRecorder } from "./recording.ts";
+import { codeOf, Trouble } from "./say.ts";
+import { Telling } from "./telling.ts";
 import { transportFor } from "./transports.ts";
-import { dataFolder, isAlive, notices, removeNotice, socketPath, writeNotice } from "./where.ts";
+import { beganAt, dataFolder, freeSocket, removeNotice, writeNotice } from "./where.ts";
 
 export interface RunOptions {
   readonly file: string | URL;
   readonly folder: string | null;
-  readonly port: string;
+  /** Port of the page; 0 takes a free one. */
+  readonly port: number;
   /** Address where the page listens instead of this machine's own; null for its own. */
   readonly listen: string | null;
   readonly for_ms: number | null;
   readonly stayDark: boolean;
+  readonly json: boolean;
 }
 
 /** The ring holds a minute; a board that sends faster than this keeps less. */
 const RING_RATE_MAX_perS = 250;
 const RING_SECONDS = 60;
-/** How long an ending daemon waits for the board to report dark, and for the disk, ms. */
-const DARK_ms_MAX = 400;
-const CLOSE_ms_MAX = 3000;
+/** How long an ending daemon waits for the board to report dark, for the disk, and to be read, ms. */
+const DARK_MS_MAX = 400;
+const CLOSE_MS_MAX = 3000;
+const SHOWN_MS_MAX = 300;
 
-/** Causes that an ending daemon leaves behind. */
-const BY_PERSON = 0;
-const DAEMON_STOPPED = 85;
-const HOST_DEFECT = 87;
+/** What a daemon is made of while it starts. */
+interface Parts {
+  readonly bench: Bench;
+  readonly ring: Ring;
+  readonly recording: Recording;
+  readonly socket: string;
+  readonly folder: string;
+  readonly telling: Telling;
+  readonly end: Ending;
+  desk: DeskProcess | null;
+}
 
 /**
  * The daemon: reads files, takes locks, starts recorder and desk, and hands the judging thread its
  * ports. Resolves when it has ended; the bench is dark then.
  */
 export async function runBench(options: RunOptions): Promise<void> {
-  const port = portOf(options.port);
-  const { bench, text } = loadBench(options.file);
+  const { bench, text, hints } = loadBench(options.file);
+  const host = options.listen ?? "127.0.0.1";
+  const socket = await freeSocket(bench.name);
+  if (options.port !== 0 || options.listen !== null) await wantPort(host, options.port);
   const folder = options.folder ?? dataFolder(bench.name);
-  const socket = freeSocket(bench.name);
   const rows = Math.min(RING_RATE_MAX_perS, bench.controller.rate_perS * 2) * RING_SECONDS;
   const ring = new Ring(new SharedArrayBuffer(ringBytes(rows)));
   const recording = await startRecorder(folder, bench, text, ring);
-  const end = new Ending();
-  const desk: { process: DeskProcess | null } = { process: null };
-  const supervision = await startSupervision(bench, ring, recording, socket, options, desk, end);
+  const telling = new Telling(options.json);
+  const end = new Ending(() => telling.note(NOT_SUSPENDED));
+  const parts: Parts = { bench, ring, recording, socket, folder, telling, end, desk: null };
+  const supervision = await startSupervision(parts, options);
   end.onDefect(() => supervision.emergency(HOST_DEFECT));
   try {
-    desk.process = new DeskProcess(
-      {
-        switchPath: socket,
-        folder,
-        host: options.listen ?? "127.0.0.1",
-        port,
-        darkPort: supervision.darkPort,
-        tokenFile: join(folder, "token"),
-        names: [],
-        conversions: bench.conversions,
-      },
-      (words) => supervision.loop.telling.say("desk", "", words, "warn", null, 0, 0),
-    );
-    await desk.process.listening();
-    writeNotice({
-      bench: bench.name,
-      pid: process.pid,
-      socket,
-      page: desk.process.address(),
-      darkPort: supervision.darkPort,
-      folder,
-    });
-    const address = desk.process.sign() ?? desk.process.address();
-    print(`beamsitter watches ${bench.name}; its page: ${address}`);
-    print(`The record is kept in ${folder}. Ctrl-C ends it and leaves the bench dark.`);
+    parts.desk = await startDesk(parts, supervision, host, options.port);
+    announce(parts, parts.desk, supervision, hints);
     if (bench.controller.transport.kind === "built-in" && !options.stayDark) {
       await bringPerson(socket);
     }
-    const cause = await end.wait(options.for_ms);
-    supervision.leave(cause);
-    await until(DARK_ms_MAX, () => !isLit(supervision));
+    supervision.leave(await end.wait(options.for_ms));
+    await until(DARK_MS_MAX, () => !isLit(supervision));
+    telling.ended(lastWords(bench, supervision));
   } finally {
     supervision.close();
-    desk.process?.close();
+    parts.desk?.close();
     removeNotice(bench.name);
     rmSync(socket, { force: true });
-    await Promise.race([recording.client.close(), pause(CLOSE_ms_MAX)]);
+    await Promise.race([recording.client.close(), pause(CLOSE_MS_MAX)]);
+    await until(SHOWN_MS_MAX, () => telling.isShown);
+    telling.close();
   }
 }
 
-function portOf(text: string): number {
-  const port = Number(text);
-  if (Number.isInteger(port) && port >= 0 && port <= 65535) return port;
-  throw new Trouble(`--port ${text} is no port.`, "Write a number from 0 to 65535.", EXIT.usage);
-}
+const NOT_SUSPENDED =
+  "Ctrl-Z is not obeyed: a judge that stands still ends the light. Ctrl-C ends the daemon.";
 
-/** The switch's path, free: a daemon that lives on it is named, a dead one's leavings are removed. */
-function freeSocket(bench: string): string {
-  const path = socketPath(bench);
-  const living = notices().find((n) => n.bench === bench && isAlive(n.pid));
-  if (living !== undefined && existsSync(living.socket)) {
-    throw new Trouble(
-      `A daemon already runs bench "${bench}" (process ${living.pid}).`,
-      `Use it (beamsitter status --on ${bench}), or end it first with Ctrl-C where it runs.`,
-    );
-  }
-  rmSync(path, { force: true });
-  return path;
-}
-
-interface Recording {
-  readonly client: RecorderClient;
-  readonly opened: Awaited<RecorderClient["opened"]>;
-  /** The last words of the recorder, empty while all is well, and how far behind it was then. */
-  readonly state: { words: string; behindRows: number };
-}
-
-async function startRecorder(
-  folder: string,
-  bench: Bench,
-  benchText: string,
-  ring: Ring,
-): Promise<Recording> {
-  const state = { words: "", behindRows: 0 };
-  const client = new RecorderClient(
-    { folder, bench: bench.name, benchText, judgeVersion: JUDGE_VERSION, ring: ring.memory },
-    (message) => {
-      if (message.kind === "state") {
-        state.words = message.words;
-        state.behindRows = ring.written - message.readRows;
-      } else if (message.kind === "failed") {
-        state.words = `${message.what} ${message.found} ${message.do}`;
-      }
-    },
-  );
-  try {
-    return { client, opened: await client.opened, state };
-  } catch (error) {
-    if (error instanceof RecordProblem) {
-      throw new Trouble(`${error.what} ${error.found}`, error.remedy);
-    }
-    throw error;
-  }
-}
-
-async function startSupervision(
-  bench: Bench,
-  ring: Ring,
-  recording: Recording,
-  socket: string,
-  options: RunOptions,
-  desk: { readonly process: DeskProcess | null },
-  end: Ending,
-): Promise<Supervision> {
+async function startSupervision(parts: Parts, options: RunOptions): Promise<Supervision> {
+  const { bench, ring, recording, socket, telling, end } = parts;
   try {
     return await Supervision.start({
       bench,
@@ -183,23 +116,79 @@ async function startSupervision(
           : { bench: null, lines: problemLines(parsed.problems, "bench file") };
       },
       differences,
-      sign: () => desk.process?.sign() ?? null,
-      adopted: (adopted) => desk.process?.adopt(adopted.conversions),
+      sign: () => parts.desk?.sign() ?? null,
+      adopted: (adopted) => parts.desk?.adopt(adopted.conversions),
+      event: (line) => telling.event(line),
       stop: () => end.now(BY_PERSON),
     });
   } catch (error) {
     await recording.client.close();
+    if ((error as { address?: unknown }).address !== socket) {
+      throw addressTrouble(error, options.listen ?? "127.0.0.1", 0);
+    }
     throw new Trouble(
-      `The switch or the dark port cannot listen: ${reasonOf(error)} (${codeOf(error)}).`,
-      "End what holds it, or set XDG_RUNTIME_DIR to a folder of your own.",
+      `The switch cannot listen on ${socket} (${codeOf(error)}).`,
+      "End the daemon that has it, or set XDG_RUNTIME_DIR to a folder of your own.",
     );
   }
 }
 
-/** The dark port answers wherever the page does, and always on this machine. */
-function darkHosts(listen: string | null): string[] {
-  if (listen === null) return ["127.0.0.1"];
-  return listen === "0.0.0.0" || listen === "::" ? [listen] : ["127.0.0.1", listen];
+async function startDesk(
+  { bench, socket, folder }: Parts,
+  supervision: Supervision,
+  host: string,
+  port: number,
+): Promise<DeskProcess> {
+  const config = {
+    switchPath: socket,
+    folder,
+    host,
+    port,
+    darkPort: supervision.darkPort,
+    tokenFile: join(folder, "token"),
+    names: [],
+    conversions: bench.conversions,
+  };
+  const desk = new DeskProcess(config, (words) =>
+    supervision.loop.telling.say("desk", "", words, "warn", null, 0, 0),
+  );
+  const failed = await desk.listening();
+  if (failed === "") return desk;
+  desk.close();
+  throw new Trouble(
+    `The page could not be started: ${failed}`,
+    "Mend that, or name another port with --port. The bench is dark.",
+  );
+}
+
+/** Tells people and programs where the daemon is to be found. */
+function announce(
+  { bench, socket, folder, telling }: Parts,
+  desk: DeskProcess,
+  supervision: Supervision,
+  hints: number,
+): void {
+  const { darkPort } = supervision;
+  const { pid } = process;
+  writeNotice({
+    bench: bench.name,
+    pid,
+    began: beganAt(pid),
+    socket,
+    page: desk.address(),
+    darkPort,
+    folder,
+  });
+  const page = desk.sign() ?? desk.address();
+  telling.started({ kind: "started", bench: bench.name, pid, page, darkPort, folder }, hints);
+}
+
+function lastWords({ name }: Bench, supervision: Supervision): string {
+  const { state } = supervision.snapshot();
+  if (state === "offline") return `${name} was not connected. The daemon has ended.`;
+  return isLit(supervision)
+    ? `${name} has not confirmed dark; without permits it is dark within its term. Go and look.`
+    : `${name} is left dark. The daemon has ended.`;
 }
 
 /** The built-in bench's person: a client of the switch like any other. */
@@ -228,37 +217,4 @@ const pause = (ms: number): Promise<void> => new Promise((resolve) => setTimeout
 async function until(ms_max: number, done: () => boolean): Promise<void> {
   const end = performance.now() + ms_max;
   while (!done() && performance.now() < end) await pause(5);
-}
-
-/** What ends the daemon, and which cause it leaves: a person (0), or the system stopping it. */
-class Ending {
-  #resolve: (cause: number) => void = () => {};
-  readonly #ended: Promise<number>;
-
-  constructor() {
-    this.#ended = new Promise((resolve) => {
-      this.#resolve = resolve;
-    });
-    process.on("SIGINT", () => this.now(BY_PERSON));
-    process.on("SIGTERM", () => this.now(DAEMON_STOPPED));
-    process.on("SIGHUP", () => this.now(DAEMON_STOPPED));
-  }
-
-  now(cause: number): void {
-    this.#resolve(cause);
-  }
-
-  /** A defect of ours: dark first, then the truth, then an end. */
-  onDefect(dark: () => void): void {
-    process.on("uncaughtException", (error) => {
-      dark();
-      process.stderr.write(`beamsitter found a defect of its own and went dark.\n${error.stack}\n`);
-      process.exit(70);
-    });
-  }
-
-  wait(for_ms: number | null): Promise<number> {
-    if (for_ms !== null) setTimeout(() => this.now(BY_PERSON), for_ms);
-    return this.#ended;
-  }
 }

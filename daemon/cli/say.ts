@@ -1,3 +1,5 @@
+import type { z } from "zod";
+
 /** Exit codes of every command, as `--help` tells them. */
 export const EXIT = {
   done: 0,
@@ -27,10 +29,14 @@ export const print = (line: string): void => {
   process.stdout.write(`${line}\n`);
 };
 
-/** One JSON document on stdout. */
-export const printJson = (value: unknown): void => {
-  process.stdout.write(`${JSON.stringify(value, null, 2)}\n`);
+/** One JSON document on stdout, through the schema that describes it. */
+export const printJson = <S extends z.ZodType>(schema: S, value: z.input<S>): void => {
+  process.stdout.write(`${JSON.stringify(schema.parse(value), null, 2)}\n`);
 };
+
+/** One JSON object a line, through the schema that describes it. */
+export const jsonLine = <S extends z.ZodType>(schema: S, value: z.input<S>): string =>
+  JSON.stringify(schema.parse(value));
 
 /** A line about work going on; to stderr, and only where a person watches. */
 export const progress = (line: string): void => {

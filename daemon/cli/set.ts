@@ -1,19 +1,15 @@
-import { Command } from "commander";
+import type { Command } from "commander";
 import { askAndTell } from "./ask.ts";
-import { currentOf } from "./currents.ts";
+import { type DaemonOptions, daemonCommandOf } from "./command.ts";
+import { currentOf } from "./values.ts";
 
 /** `set CURRENT`: another current, inside the corridor, while armed. */
 export const setCommand = (): Command =>
-  new Command("set")
-    .description("ask for another current while armed or emitting")
-    .argument("<current>", "the current you mean, with its unit: 1.5A; 0A goes below threshold")
-    .option("--on <name>", "which bench, where several run")
-    .option("--json", "the answer as one JSON object")
-    .addHelpText("after", "\nExample:\n  beamsitter set 1.5A")
-    .action((text: string, options: { on?: string; json?: boolean }) =>
-      askAndTell(
-        options.on,
-        { verb: "set", current_mA: currentOf(text), asker: "person" },
-        options.json,
-      ),
+  daemonCommandOf("set", "ask for another current while armed or emitting", [
+    "set 1.5A",
+    "set 0 A --on north",
+  ])
+    .argument("<current...>", "the current you mean, with its unit; 0 A goes below threshold")
+    .action((words: readonly string[], options: DaemonOptions) =>
+      askAndTell(options, { verb: "set", current_mA: currentOf(words), asker: "person" }),
     );

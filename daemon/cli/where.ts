@@ -17,6 +17,8 @@ import { EXIT, reasonOf, Trouble } from "./say.ts";
 const Notice = z.object({
   bench: z.string(),
   pid: z.number(),
+  /** When that process began, as the system counts it: numbers of processes are used again. */
+  began: z.string(),
   socket: z.string(),
   page: z.string(),
   darkPort: z.number(),
@@ -37,11 +39,36 @@ export function runtimeFolder(): string {
   return folder;
 }
 
-/** Folder where a bench's record is kept unless `--data` says otherwise. */
-export function dataFolder(bench: string): string {
+/** Folder of all records that `--data` did not put elsewhere. */
+function recordsFolder(): string {
   const given = process.env.XDG_DATA_HOME;
   const base = given !== undefined && given !== "" ? given : join(homedir(), ".local", "share");
-  return join(base, "beamsitter", bench);
+  return join(base, "beamsitter");
+}
+
+/** Folder where a bench's record is kept unless `--data` says otherwise. */
+export const dataFolder = (bench: string): string => join(recordsFolder(), bench);
+
+/**
+ * Folder of the record meant: that of the running daemon, else the usual one of that bench; without
+ * a name, of the only bench there is. Throws a Trouble that names the choice.
+ */
+export function recordFolder(on: string | undefined): string {
+  const running = notices().filter(lives);
+  const kept = existsSync(recordsFolder()) ? readdirSync(recordsFolder()) : [];
+  const names = [...new Set([...running.map((n) => n.bench), ...kept])].sort();
+  const name = on ?? (names.length === 1 ? names[0] : undefined);
+  if (name !== undefined && names.includes(name)) {
+    return running.find((n) => n.bench === name)?.folder ?? dataFolder(name);
+  }
+  const there = names.length === 0 ? "There is none yet." : `There are: ${names.join(", ")}.`;
+  throw new Trouble(
+    on === undefined && names.length > 1
+      ? "Several benches have a record here."
+      : `There is no record of ${on === undefined ? "any bench" : `a bench named "${on}"`} in ${recordsFolder()}.`,
+    `${there} Say which with --on NAME, or name its folder with --data.`,
+    on === undefined && names.length > 1 ? EXIT.usage : EXIT.outside,
+  );
 }
 
 /** The longest path a Unix socket may have on Linux is 107 bytes. */
@@ -56,6 +83,32 @@ export function socketPath(bench: string): string {
     );
   }
   return path;
+}
+
+/** The switch's path, free: a daemon that lives on it is named, a dead one's leavings are removed. */
+export async function freeSocket(bench: string): Promise<string> {
+  const path = socketPath(bench);
+  const living = notices().find((n) => n.bench === bench && lives(n));
+  if (living === undefined && !(await isListening(path))) {
+    rmSync(path, { force: true });
+    return path;
+  }
+  const which = living === undefined ? "" : ` (process ${living.pid})`;
+  throw new Trouble(
+    `A daemon already runs bench "${bench}"${which}.`,
+    `Use it (beamsitter status --on ${bench}), or end it first with Ctrl-C where it runs. Nothing was started.`,
+  );
+}
+
+/** Whether somebody listens: also a daemon that is just starting, or stands still. */
+async function isListening(path: string): Promise<boolean> {
+  try {
+    (await SwitchClient.connect(path)).close();
+    return true;
+  } catch {
+    // Nobody there, or only what a killed daemon left.
+    return false;
+  }
 }
 
 const noticePath = (bench: string): string => join(runtimeFolder(), `${bench}.json`);
@@ -85,19 +138,31 @@ function readNotice(path: string): unknown {
   }
 }
 
-/** Whether a process of that number lives. */
-export function isAlive(pid: number): boolean {
+/** Whether the daemon that left this notice lives: a process of its number that began when it did. */
+export function lives(notice: Notice): boolean {
   try {
-    process.kill(pid, 0);
-    return true;
+    process.kill(notice.pid, 0);
   } catch {
+    // No such process, or somebody else's: a number that was ours is used again.
     return false;
+  }
+  return beganAt(notice.pid) === notice.began;
+}
+
+/** Clock ticks since boot at which a process began; empty where the system has no /proc. */
+export function beganAt(pid: number): string {
+  try {
+    const stat = readFileSync(`/proc/${pid}/stat`, "latin1");
+    // The second field is the program's name in brackets, which may hold spaces and brackets.
+    return stat.slice(stat.lastIndexOf(")") + 2).split(" ")[19] ?? "";
+  } catch {
+    return "";
   }
 }
 
 /** The daemon meant: by `--on`, or the only one there is. Throws a Trouble that names the choice. */
 export function pickNotice(on: string | undefined): Notice {
-  const alive = notices().filter((n) => isAlive(n.pid) && existsSync(n.socket));
+  const alive = notices().filter(lives);
   if (on !== undefined) {
     const found = alive.find((n) => n.bench === on);
     if (found !== undefined) return found;

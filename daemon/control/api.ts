@@ -113,6 +113,8 @@ export const SwitchRequest = z.discriminatedUnion("verb", [
     benchText: z.string(),
     confirm: z.boolean(),
   }),
+  /** What arming at this current would mean, in a sentence to read back. Changes nothing. */
+  z.object({ id: z.number(), verb: z.literal("mean"), current_mA: z.number() }),
   z.object({ id: z.number(), verb: z.literal("rawlog") }),
   z.object({ id: z.number(), verb: z.literal("sign") }),
   z.object({ id: z.number(), verb: z.literal("stop") }),

@@ -11,6 +11,7 @@ import {
 } from "../judge/records.ts";
 import { newInput, newOut, newState, restoreLatch, type State } from "../judge/state.ts";
 import { step } from "../judge/step.ts";
+import { brokenLines } from "../link/counts.ts";
 import { type CurvePoints, LinkSession } from "../link/session.ts";
 import type { Bench } from "../model/bench.ts";
 import { LINK_FACTS, type LinkFact } from "../model/link-fact.ts";
@@ -52,6 +53,8 @@ export class Loop {
   readonly #ring: Ring;
   readonly #input: Input;
   #inputs = 0;
+  /** Broken lines counted when the port opened. */
+  #brokenAtOpen = 0;
   /** Rows of the ring written so far; the recorder finds by it where a manifest begins. */
   #rows = 0;
 
@@ -72,8 +75,14 @@ export class Loop {
 
   /** The port is open: the link begins to ask who is there. */
   opened(now: Mono_ms): void {
+    this.#brokenAtOpen = brokenLines(this.session.counts);
     this.session.connected(now);
     this.#drainLink(now);
+  }
+
+  /** Lines that could not be read since the port opened. */
+  get brokenSinceOpen(): number {
+    return brokenLines(this.session.counts) - this.#brokenAtOpen;
   }
 
   /** The port is gone, and why. */
@@ -203,6 +212,9 @@ export class Loop {
     if (manifest === null) return;
     this.#ports.record({ kind: "manifest", ringRow: this.#rows, manifest });
     this.#compile(manifest, this.#curveFor(manifest));
+    if (this.problems.length > 0) {
+      this.telling.say("link", "bench-file", this.problems.join(" "), "warn", null, 0, 0);
+    }
   }
 
   #begin(kind: number, now: Mono_ms): void {

@@ -1,4 +1,4 @@
-import type { EventLine, Snapshot, SwitchAnswer } from "../control/api.ts";
+import type { EventLine, SwitchAnswer } from "../control/api.ts";
 import type { Bench } from "../model/bench.ts";
 import type { BenchEvent } from "../model/event.ts";
 import type { Manifest } from "../model/manifest.ts";
@@ -31,5 +31,3 @@ export interface LoopPorts {
 
 /** Answer to a request, before the switch puts its number on it. */
 export type LoopAnswer = Omit<SwitchAnswer, "id">;
-
-export type { EventLine, Snapshot };

@@ -1,16 +1,20 @@
 import type { Snapshot } from "../control/api.ts";
 import { FLAG, STATE, STATES, type View } from "../judge/records.ts";
 import { nextSentence, type SentenceNames, stateSentence } from "../judge/words.ts";
+import { brokenLines } from "../link/counts.ts";
 import type { Bench } from "../model/bench.ts";
 import { causeOf } from "../model/cause.ts";
 import { MAKER_WORDS, makerOf } from "../model/ceiling.ts";
 import { formatQuantity } from "../model/quantities.ts";
+import { linkWords } from "./link-words.ts";
 import type { Loop } from "./loop.ts";
 
 /** What the snapshot tells of things beside the loop. */
 export interface Beside {
   readonly wall_ms: number;
   readonly now_ms: number;
+  /** What the port says; empty while lines come. */
+  readonly port: string;
   readonly recorder: { readonly behind_ms: number; readonly words: string };
 }
 
@@ -62,7 +66,7 @@ export function snapshotOf(loop: Loop, beside: Beside): Snapshot {
     next: nextSentence(namesOf(bench), view, age_ms),
     warnings: [...loop.telling.warnings].map(([hazard, w]) => ({ hazard, ...w })),
     age_ms: known(age_ms),
-    link: linkPart(loop, view),
+    link: linkPart(loop, view, beside.port),
     recorder: beside.recorder,
     safety: safetyText(bench),
   };
@@ -93,13 +97,12 @@ function corridorOf(view: View) {
   };
 }
 
-function linkPart(loop: Loop, view: View): Snapshot["link"] {
+function linkPart(loop: Loop, view: View, port: string): Snapshot["link"] {
   const { session, bench } = loop;
   const counts = session.counts;
-  const words = loop.problems.length > 0 ? loop.problems.join(" ") : "";
   return {
     phase: session.phase,
-    words,
+    words: linkWords(loop, port),
     rate_perS: session.manifest?.rate_perS ?? bench.controller.rate_perS,
     term_ms: bench.controller.term_ms,
     fall_ms: session.manifest?.fall_ms ?? 0,
@@ -107,6 +110,6 @@ function linkPart(loop: Loop, view: View): Snapshot["link"] {
     loopDelayWorst_ms: known(view.loopDelayWorst_ms),
     lost: counts.lost,
     garbled: counts.crc + counts.char,
-    badLines: counts.crc + counts.char + counts.long + counts.verb + counts.form + counts.direction,
+    badLines: brokenLines(counts),
   };
 }

@@ -8,20 +8,8 @@ import type { LinkFact } from "../model/link-fact.ts";
 import type { Manifest } from "../model/manifest.ts";
 import type { SessionKind } from "../model/record-messages.ts";
 import type { Wall_ms } from "../model/times.ts";
+import { keepsTrouble, standsInTheWay, toldFact } from "./link-words.ts";
 import type { LoopPorts } from "./ports.ts";
-
-/** Link facts that are a person's business: each becomes an event of kind "link". */
-const TOLD: ReadonlySet<LinkFact> = new Set<LinkFact>([
-  "wrong-version",
-  "board-reset",
-  "board-changed",
-  "curve-loaded",
-  "curve-failed",
-  "reset-refused",
-  "arm-refused",
-  "no-answer",
-  "silence",
-]);
 
 /**
  * Turns what the judge orders into what the recorder keeps and people read: events with their
@@ -34,6 +22,8 @@ export class Telling {
   #session: SessionKind | "end" = "end";
   /** Warnings that stand now, by row, oldest first. */
   readonly warnings = new Map<string, { readonly words: string; readonly since: Wall_ms }>();
+  /** What keeps this board from being used, in a sentence; empty where nothing does. */
+  trouble = "";
   /** When the state last changed, wall ms. */
   since: Wall_ms;
   #state: number = STATE.offline;
@@ -67,10 +57,13 @@ export class Telling {
     });
   }
 
-  /** A link fact that people want to hear of. */
+  /** A link fact: told where it is a person's business, and kept while it stands in the way. */
   link(fact: LinkFact, value: number, text: string, input: Input): void {
-    if (TOLD.has(fact))
-      this.say("link", fact, text, fact === "curve-loaded" ? "calm" : "warn", input, value, 0);
+    const told = toldFact(fact, value, text);
+    if (told !== null) this.say("link", fact, told.words, told.weight, input, value, 0);
+    this.trouble = standsInTheWay(fact, text)
+      ? (told?.words ?? "")
+      : keepsTrouble(fact, this.trouble);
   }
 
   /** What a step said: its events, and the session it opens or ends. */
