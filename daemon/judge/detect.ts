@@ -60,13 +60,12 @@ export function caseOver(_plan: Plan, state: State, row: number): void {
   state.tripValue[row] = state.caseMedian_degC;
 }
 
-export function caseOpen(plan: Plan, state: State, row: number): void {
+/** Share of its divider that the case sensor reads: high while open, low while shorted. */
+export function caseDivider(plan: Plan, state: State, row: number): void {
   const share = state.case_counts * plan.caseShare.perCount + plan.caseShare.offset;
   state.warnValue[row] = share;
   state.tripValue[row] = share;
 }
-
-export const caseShort = caseOpen;
 
 /** Counts by which the worst judged channel lies outside what its converter can give. */
 export function sensorRange(_plan: Plan, state: State, row: number): void {

@@ -65,12 +65,12 @@ const TABLE: readonly Hazard[] = [
     "Heat no longer leaves as it should, or the room is too warm.",
     "Look at the fan, the sink and the air round it.",
   ]),
-  hazard("case-open", { cause: 68, trips: lit, who: both, doubt: true }, detect.caseOpen, [
+  hazard("case-open", { cause: 68, trips: lit, who: both, doubt: true }, detect.caseDivider, [
     "the case sensor reads open",
     "The temperature of the case is not known, so no current is safe.",
     "Look at the sensor's lead and connector.",
   ]),
-  hazard("case-short", { cause: 69, trips: lit, who: both, doubt: true }, detect.caseShort, [
+  hazard("case-short", { cause: 69, trips: lit, who: both, doubt: true }, detect.caseDivider, [
     "the case sensor reads shorted",
     "The temperature of the case is not known, so no current is safe.",
     "Look at the sensor's lead and connector.",

@@ -8,8 +8,7 @@ import type { Sample } from "../model/sample.ts";
 /** Counts up whenever the meaning of a record changes; stored with every recording. */
 export const JUDGE_VERSION = 1;
 
-export const INPUT_KINDS = ["sample", "request", "link", "deadline"] as const;
-export type InputKind = (typeof INPUT_KINDS)[number];
+/** Kinds of input. */
 export const INPUT = { sample: 0, request: 1, link: 2, deadline: 3 } as const;
 
 /** What people and programs may ask of the judge. `value` by request is named beside each. */
@@ -80,7 +79,6 @@ export interface Input {
 
 /** States, as people see them. */
 export const STATES = ["offline", "standby", "armed", "emitting", "tripped"] as const;
-export type StateName = (typeof STATES)[number];
 export const STATE = { offline: 0, standby: 1, armed: 2, emitting: 3, tripped: 4 } as const;
 
 export const FLAG = {
@@ -136,10 +134,10 @@ export interface Out {
   cap_counts: number;
   aim_counts: number;
   term_ticks: number;
-  /** An exchange for the link to begin: see ORDERS. */
+  /** An exchange for the link to begin: see ORDER. */
   order: number;
   orderValue: number;
-  /** Answer to a request: see ANSWERS; `answerValue` is e.g. the highest current allowed, mA. */
+  /** Answer to a request: see ANSWER; `answerValue` is e.g. the highest current allowed, mA. */
   answer: number;
   answerId: number;
   refusal: number;
@@ -155,8 +153,6 @@ export interface Out {
   eventB: Float64Array;
   view: View;
 }
-export const ORDERS = ["none", "arm", "reset"] as const;
 export const ORDER = { none: 0, arm: 1, reset: 2 } as const;
-export const ANSWERS = ["none", "done", "refused", "begun"] as const;
 export const ANSWER = { none: 0, done: 1, refused: 2, begun: 3 } as const;
 export const NO_HAZARD = -100;

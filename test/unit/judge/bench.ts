@@ -125,12 +125,6 @@ export function planOf(bench: Bench = BENCH, manifest: Manifest = MANIFEST): Pla
   return compiled.plan;
 }
 
-/** The bench with one hazard row changed. */
-export const withRow = (id: HazardId, levels: Partial<HazardLevels>): Bench => ({
-  ...BENCH,
-  hazards: { ...BENCH.hazards, [id]: { ...BENCH.hazards[id], ...levels } },
-});
-
 /** The bench with every other row silent, so that a test sees this row alone. */
 export function onlyRow(id: HazardId, levels: Partial<HazardLevels> = {}): Bench {
   const silent = HAZARD_IDS.map((other) => {

@@ -2,7 +2,6 @@ import { readFileSync } from "node:fs";
 import { makeCurve } from "../../../daemon/bench-file/curve.ts";
 import { parseBench } from "../../../daemon/bench-file/parse.ts";
 import { North } from "../../../daemon/bench-sim/north.ts";
-import type { SwitchRequest } from "../../../daemon/control/api.ts";
 import { STATES } from "../../../daemon/judge/records.ts";
 import { Asking } from "../../../daemon/loop/asking.ts";
 import { Lockstep } from "../../../daemon/loop/lockstep.ts";
@@ -130,5 +129,3 @@ export class Chain {
     this.until(() => this.board.plant.current_mA > current_mA * 0.98, 20_000);
   }
 }
-
-export type { SwitchRequest };
