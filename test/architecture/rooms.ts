@@ -94,7 +94,7 @@ export const ROOMS_TABLE: readonly Room[] = [
   {
     path: "daemon/cli",
     rooms: ["daemon", PROTOCOL],
-    packages: ["node:*", "commander", "pino", "serialport", "zod"],
+    packages: ["node:*", "commander", "serialport", "zod"],
   },
   { path: "daemon/paths.ts", rooms: [], packages: ["node:path", "node:url"] },
   {
