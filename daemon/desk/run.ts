@@ -14,7 +14,8 @@ import { SwitchLine } from "./switch-line.ts";
 const NICE = 10;
 
 const toParent = (message: FromDesk): void => {
-  if (process.connected) process.send?.(message);
+  // A daemon that is just being killed cannot be told anything: "disconnect" follows and ends us.
+  if (process.connected) process.send?.(message, () => {});
 };
 
 /** Wires and starts the desk of one data folder; resolves when it listens, rejects in words. */

@@ -197,7 +197,8 @@ int main(int argc, char **argv) {
         /* 1.05 W/A above 0.40 A, at 0.1 mW a count: what the bench file of the measurement says. */
         int32_t light = drive > 800 ? ((int32_t)drive - 800) * 105 / 20 : 0;
         int32_t values[4] = {drive, (int32_t)drive * 25 / 8, CASE_25_DEGC, light};
-        sent_us[core.seq & (SENT - 1)] = now_us();
+        /* The sample written next carries the next number. */
+        sent_us[(core.seq + 1) & (SENT - 1)] = now_us();
         core_conversion(&core, (uint16_t)values[1], tick);
         core_reading(&core, values, tick);
         if (begin_measuring > 0) measured++;
