@@ -37,10 +37,12 @@ const COLUMNS = `id, session, run, t0, t1, input0, n, manifest, bench_file AS be
 export class ChunkIndex {
   readonly chunks: readonly Chunk[];
   readonly #tails: ReadonlyMap<number, Stored>;
-  readonly #db: Database.Database;
+  readonly #samples: Database.Statement;
+  readonly #rollup: Database.Statement;
 
   constructor(db: Database.Database, filter: ChunkFilter) {
-    this.#db = db;
+    this.#samples = db.prepare("SELECT codec, crc, blob FROM blocks WHERE id = ?");
+    this.#rollup = db.prepare("SELECT codec, crc, blob FROM rollup_1s WHERE block = ?");
     const { where, values } = conditions(filter);
     const read = db.transaction(() => ({
       blocks: db.prepare(`SELECT ${COLUMNS} FROM blocks ${where}`).all(values) as Chunk[],
@@ -56,18 +58,14 @@ export class ChunkIndex {
 
   /** Opens a chunk's samples; says which one is damaged and why, where it is. */
   open(chunk: Chunk): Block | { readonly fault: string } {
-    const stored =
-      this.#tails.get(chunk.id) ??
-      this.#db.prepare("SELECT codec, crc, blob FROM blocks WHERE id = ?").get(chunk.id);
+    const stored = this.#tails.get(chunk.id) ?? this.#samples.get(chunk.id);
     return opened(stored as Stored | undefined, `block ${chunk.id}`);
   }
 
   /** Opens a block's one-second rollup; null for a chunk of the tail. */
   openRollup(chunk: Chunk): Block | { readonly fault: string } | null {
     if (chunk.id < 0) return null;
-    const stored = this.#db
-      .prepare("SELECT codec, crc, blob FROM rollup_1s WHERE block = ?")
-      .get(chunk.id);
+    const stored = this.#rollup.get(chunk.id);
     return opened(stored as Stored | undefined, `the rollup of block ${chunk.id}`);
   }
 }
