@@ -1,10 +1,10 @@
 import { beforeAll, describe, expect, test } from "vitest";
 import { EMITTING, type Host, onBoard, TERM, TRIPPED } from "./host.ts";
-import { buildSimulator, CYCLES_PER_MS } from "./simulator.ts";
+import { buildSimulator, CYCLES_PER_ms } from "./simulator.ts";
 
 /** Two passes of the main loop and the rounding of a tick; then the 2 ms filter down to 5 mA. */
-const PASS_MS = 2;
-const FALL_MS = 15;
+const PASS_ms = 2;
+const FALL_ms = 15;
 
 beforeAll(() => {
   buildSimulator();
@@ -24,7 +24,7 @@ const noted = async (host: Host, ms: number, stick: () => void): Promise<Granted
   const note = (arrives: number): void => {
     const permit = host.permitted;
     if (permit === null) throw new Error("no permit was sent");
-    granted.push({ arrives, end: zero + (permit.tick + permit.term) * CYCLES_PER_MS });
+    granted.push({ arrives, end: zero + (permit.tick + permit.term) * CYCLES_PER_ms });
   };
   note(world.now);
   host.post = (line) => {
@@ -39,8 +39,8 @@ const noted = async (host: Host, ms: number, stick: () => void): Promise<Granted
 /** At no millisecond since `from` does current flow behind the end of the newest term received. */
 const neverOutlasts = (host: Host, granted: readonly Granted[], from: number): void => {
   const { world } = host;
-  const slack = (PASS_MS + FALL_MS) * CYCLES_PER_MS;
-  for (let at = from; at < world.now; at += CYCLES_PER_MS) {
+  const slack = (PASS_ms + FALL_ms) * CYCLES_PER_ms;
+  for (let at = from; at < world.now; at += CYCLES_PER_ms) {
     const lit = world.chip.outputs.findLast((output) => output.cycle <= at)?.lit ?? false;
     const end = granted.findLast((permit) => permit.arrives <= at)?.end ?? 0;
     if (lit) expect(at).toBeLessThanOrEqual(end + slack);
@@ -56,7 +56,7 @@ describe.concurrent.each([
       const { world } = host;
       const from = world.now;
       const granted = await noted(host, 1000, () => {
-        world[direction].stuckUntil = world.now + 200 * CYCLES_PER_MS;
+        world[direction].stuckUntil = world.now + 200 * CYCLES_PER_ms;
       });
       neverOutlasts(host, granted, from);
       expect(host.last.status & EMITTING).toBe(EMITTING);
@@ -70,7 +70,7 @@ describe.concurrent.each([
       const { world } = host;
       await host.quiet();
       let posted = false;
-      world[direction].stuckUntil = world.now + 300 * CYCLES_PER_MS;
+      world[direction].stuckUntil = world.now + 300 * CYCLES_PER_ms;
       // One permit for the first sample from now on; it or its sample waits in the buffer.
       host.post = (line) => {
         world.sendLine(line);
@@ -84,7 +84,7 @@ describe.concurrent.each([
       const { tick, term } = host.permitted ?? { tick: 0, term: 0 };
       const end = await world.cycleOfTick(tick + term);
       await world.pass(TERM + 100);
-      expect(Math.abs(world.cutAfter_ms(end - 10 * CYCLES_PER_MS) - 10)).toBeLessThan(PASS_MS);
+      expect(Math.abs(world.cutAfter_ms(end - 10 * CYCLES_PER_ms) - 10)).toBeLessThan(PASS_ms);
       expect(host.last.cause).toBe(2);
     }));
 
@@ -94,11 +94,11 @@ describe.concurrent.each([
       await host.quiet();
       const from = world.now;
       const granted = await noted(host, 2000, () => {
-        world[direction].stuckUntil = world.now + 2000 * CYCLES_PER_MS;
+        world[direction].stuckUntil = world.now + 2000 * CYCLES_PER_ms;
       });
       neverOutlasts(host, granted, from);
       expect(world.darkAfter_ms(from)).toBeGreaterThan(TERM / 2);
-      expect(world.darkAfter_ms(from)).toBeLessThan(TERM + FALL_MS);
+      expect(world.darkAfter_ms(from)).toBeLessThan(TERM + FALL_ms);
       const dark = world.now;
       await world.pass(1000);
       expect(world.litSince(dark)).toBe(false);

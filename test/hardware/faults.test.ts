@@ -1,14 +1,14 @@
 import { beforeAll, describe, expect, test } from "vitest";
 import { seal } from "../../firmware-protocol/line.ts";
 import { type Host, onBoard, TERM, TRIPPED } from "./host.ts";
-import { buildSimulator, CYCLES_PER_MS } from "./simulator.ts";
+import { buildSimulator, CYCLES_PER_ms } from "./simulator.ts";
 
 /** From a dark pin to less than 5 mA: the 2 ms filter of the board's page, and the plant's step. */
-const FALL_MS = 15;
+const FALL_ms = 15;
 /** Two passes of the main loop, and the rounding of a tick. */
-const PASS_MS = 2;
+const PASS_ms = 2;
 /** The one-shot of the board's page. */
-const ONE_SHOT_MS = 75;
+const ONE_SHOT_ms = 75;
 
 beforeAll(() => {
   buildSimulator();
@@ -46,10 +46,10 @@ const expires = async (host: Host): Promise<void> => {
   if (permit === null) throw new Error("no permit was sent");
   const end = await world.cycleOfTick(permit.tick + permit.term);
   await world.pass(TERM + 100);
-  const late_ms = world.cutAfter_ms(end - 5 * CYCLES_PER_MS) - 5;
-  expect(late_ms).toBeGreaterThan(-PASS_MS);
-  expect(late_ms).toBeLessThan(PASS_MS);
-  await darkWithin(host, end - 5 * CYCLES_PER_MS, 5 + PASS_MS + FALL_MS);
+  const late_ms = world.cutAfter_ms(end - 5 * CYCLES_PER_ms) - 5;
+  expect(late_ms).toBeGreaterThan(-PASS_ms);
+  expect(late_ms).toBeLessThan(PASS_ms);
+  await darkWithin(host, end - 5 * CYCLES_PER_ms, 5 + PASS_ms + FALL_ms);
 };
 
 describe.concurrent("the host falls silent", () => {
@@ -121,7 +121,7 @@ describe.concurrent("a bad wire", () => {
       host.post = send;
       const end = await world.cycleOfTick(lastGood.tick + lastGood.term);
       await world.pass(TERM + 100);
-      expect(world.cutAfter_ms(end - 5 * CYCLES_PER_MS)).toBeLessThan(5 + PASS_MS);
+      expect(world.cutAfter_ms(end - 5 * CYCLES_PER_ms)).toBeLessThan(5 + PASS_ms);
       expect(Math.max(...world.chip.outputs.map((o) => o.drive))).toBe(700);
       host.post = (line) => world.sendLine(line);
       await staysDark(host, 2);
@@ -168,8 +168,8 @@ describe.concurrent("a bad wire", () => {
       const sent = host.world.now;
       await host.world.pass(50);
       const wire_ms = (bytes.length * 11 * 1000) / 115_200;
-      expect(host.world.cutAfter_ms(sent)).toBeLessThan(wire_ms + PASS_MS);
-      await darkWithin(host, sent, wire_ms + PASS_MS + FALL_MS);
+      expect(host.world.cutAfter_ms(sent)).toBeLessThan(wire_ms + PASS_ms);
+      await darkWithin(host, sent, wire_ms + PASS_ms + FALL_ms);
       await staysDark(host, 4);
     }),
   );
@@ -181,7 +181,7 @@ describe.concurrent("a bad wire", () => {
       const sent = host.world.now;
       await host.world.pass(50);
       expect(host.world.cutAfter_ms(sent)).toBeLessThan(1);
-      await darkWithin(host, sent, PASS_MS + FALL_MS);
+      await darkWithin(host, sent, PASS_ms + FALL_ms);
       await staysDark(host, 4);
     }));
 });
@@ -195,17 +195,17 @@ describe.concurrent("the board itself fails", () => {
       const { world } = host;
       await world.chip.command(`hang ${symbol}`);
       const from = world.now;
-      await darkWithin(host, from, ONE_SHOT_MS + 5);
+      await darkWithin(host, from, ONE_SHOT_ms + 5);
       await world.pass(600);
       const bitten = world.chip.boots.find((cycle) => cycle > from) ?? 0;
-      const watchdog_ms = (bitten - from) / CYCLES_PER_MS;
+      const watchdog_ms = (bitten - from) / CYCLES_PER_ms;
       expect(watchdog_ms).toBeGreaterThan(400);
       expect(watchdog_ms).toBeLessThan(650);
       await world.pass(1200); // it hangs again after every reset
       expect(world.chip.boots.length).toBeGreaterThan(3);
       await world.chip.command("mend");
       await world.pass(700);
-      expect(world.litSince(from + 100 * CYCLES_PER_MS)).toBe(false);
+      expect(world.litSince(from + 100 * CYCLES_PER_ms)).toBe(false);
       await staysDark(host, 6);
     }),
   );
@@ -217,7 +217,7 @@ describe.concurrent("the board itself fails", () => {
   ])("reset by %s: dark at once, latched as cause %i", (kind, cause) =>
     onBoard(async (host) => {
       await host.world.chip.command(`reset ${kind}`);
-      await darkWithin(host, host.world.now, FALL_MS);
+      await darkWithin(host, host.world.now, FALL_ms);
       await host.world.pass(200);
       await staysDark(host, cause);
     }),
@@ -232,7 +232,7 @@ describe.concurrent("the board itself fails", () => {
       const opened = host.world.now;
       await host.world.pass(50);
       expect(host.world.cutAfter_ms(opened)).toBeLessThan(10);
-      await darkWithin(host, opened, 10 + FALL_MS);
+      await darkWithin(host, opened, 10 + FALL_ms);
       await host.world.chip.command(`pin ${pin} 1`);
       await host.world.pass(600);
       await staysDark(host, cause);

@@ -191,7 +191,7 @@ export class Host {
 export type Refusal = Extract<Message, { verb: "no" }>;
 
 /** After a boot: key and loop must have been closed for half a second before the board arms. */
-export const SETTLE_MS = 800;
+export const SETTLE_ms = 800;
 
 /** A term most hosts use, ticks of one millisecond. */
 export const TERM = 500;
@@ -201,7 +201,7 @@ export const emittingBoard = async (aim = 700, term = TERM): Promise<Host> => {
   const world = new World();
   const host = new Host(world);
   await world.chip.command("case 25");
-  await world.pass(SETTLE_MS);
+  await world.pass(SETTLE_ms);
   await host.introduce();
   await host.loadCurve(CURVE);
   await host.arm();

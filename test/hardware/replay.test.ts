@@ -1,7 +1,7 @@
 import { afterEach, beforeAll, describe, expect, test } from "vitest";
 import { seal } from "../../firmware-protocol/line.ts";
-import { CURVE, EMITTING, emittingBoard, Host, SETTLE_MS, TERM } from "./host.ts";
-import { buildSimulator, CYCLES_PER_MS } from "./simulator.ts";
+import { CURVE, EMITTING, emittingBoard, Host, SETTLE_ms, TERM } from "./host.ts";
+import { buildSimulator, CYCLES_PER_ms } from "./simulator.ts";
 import { type Recorded, World } from "./world.ts";
 
 let world: World;
@@ -18,14 +18,14 @@ const replay = async (recorded: readonly Recorded[]): Promise<void> => {
     world.at(cycle + shift, () => world.chip.receive(bytes));
   }
   const last = recorded.at(-1)?.cycle ?? 0;
-  await world.pass((last + shift - world.now) / CYCLES_PER_MS + 1000);
+  await world.pass((last + shift - world.now) / CYCLES_PER_ms + 1000);
 };
 
 /** A board that has just been switched on, settled, its case at 25 °C. */
 const freshBoard = async (): Promise<World> => {
   const fresh = new World();
   await fresh.chip.command("case 25");
-  await fresh.pass(SETTLE_MS);
+  await fresh.pass(SETTLE_ms);
   return fresh;
 };
 
@@ -54,15 +54,15 @@ describe("a recorded session, byte for byte", () => {
 
     await world.chip.command("reset power");
     from = world.now;
-    await world.pass(SETTLE_MS);
+    await world.pass(SETTLE_ms);
     await replay(recorded);
     expect(world.litSince(from)).toBe(false);
 
     await world.chip.command("reset power");
-    await world.pass(SETTLE_MS);
+    await world.pass(SETTLE_ms);
     // The wrap falls into the middle of the replayed permits.
     const middle = recorded[Math.floor(recorded.length / 2)]?.cycle ?? 0;
-    const ahead_ms = Math.floor((middle - (recorded[0]?.cycle ?? 0)) / CYCLES_PER_MS);
+    const ahead_ms = Math.floor((middle - (recorded[0]?.cycle ?? 0)) / CYCLES_PER_ms);
     await world.chip.poke32("tick", 2 ** 32 - ahead_ms);
     from = world.now;
     await replay(recorded);
@@ -71,7 +71,7 @@ describe("a recorded session, byte for byte", () => {
 
     // A host that answers this board lights it: it was not the board that had died.
     await world.chip.command("reset power");
-    await world.pass(SETTLE_MS);
+    await world.pass(SETTLE_ms);
     await host.introduce();
     await host.loadCurve(CURVE);
     await host.arm();
@@ -129,7 +129,7 @@ describe("the tick wraps in a running session", () => {
     if (permit === null) throw new Error("no permit was sent");
     const end = await world.cycleOfTick(permit.tick + permit.term);
     await world.pass(700);
-    expect(Math.abs(world.cutAfter_ms(end - 10 * CYCLES_PER_MS) - 10)).toBeLessThan(2);
+    expect(Math.abs(world.cutAfter_ms(end - 10 * CYCLES_PER_ms) - 10)).toBeLessThan(2);
     expect(host.last.cause).toBe(2);
   });
 });

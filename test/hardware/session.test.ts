@@ -10,15 +10,15 @@ import {
   Host,
   INDICATOR,
   LIMITED,
-  SETTLE_MS,
+  SETTLE_ms,
   TERM,
   TRIPPED,
 } from "./host.ts";
-import { buildSimulator, CYCLES_PER_MS } from "./simulator.ts";
+import { buildSimulator, CYCLES_PER_ms } from "./simulator.ts";
 import { World } from "./world.ts";
 
 /** A filter of 2 ms and one plant step, on top of what the pin does. */
-const FALL_MS = 20;
+const FALL_ms = 20;
 
 beforeAll(() => {
   buildSimulator();
@@ -32,7 +32,7 @@ describe("a session on the simulated board", () => {
     world = new World();
     const host = new Host(world);
     await world.chip.command("case 25");
-    await world.pass(SETTLE_MS);
+    await world.pass(SETTLE_ms);
     const hello = await host.introduce();
     expect(hello).toMatchObject({ firmware: "bs-atmega328p-1", rate: 50, tick_us: 1000 });
     expect(host.heard.filter((m) => m.verb === "channel").map((m) => m.fields.name)).toEqual([
@@ -54,8 +54,8 @@ describe("a session on the simulated board", () => {
     host.wish = { cap: 800, aim: 700, term: TERM };
     await world.until("light", 6000, () => host.last.values[0] === 700);
     const first = world.chip.outputs.find((o) => o.drive > 0)?.cycle ?? 0;
-    expect((first - armedAt) / CYCLES_PER_MS).toBeGreaterThanOrEqual(3000);
-    expect((first - armedAt) / CYCLES_PER_MS).toBeLessThanOrEqual(5000);
+    expect((first - armedAt) / CYCLES_PER_ms).toBeGreaterThanOrEqual(3000);
+    expect((first - armedAt) / CYCLES_PER_ms).toBeLessThanOrEqual(5000);
 
     await world.pass(200);
     expect(host.last.status & (EMITTING | ARMED | INDICATOR)).toBe(EMITTING | ARMED | INDICATOR);
@@ -75,7 +75,7 @@ describe("a session on the simulated board", () => {
     expect(world.cutAfter_ms(asked)).toBeLessThan(8); // behind a permit on the wire
     expect(host.last.status & (ARMED | EMITTING | TRIPPED)).toBe(0);
     await world.pass(2000); // permits of the ended session go on, and count for nothing
-    expect(world.litSince(asked + FALL_MS * CYCLES_PER_MS)).toBe(false);
+    expect(world.litSince(asked + FALL_ms * CYCLES_PER_ms)).toBe(false);
     expect(host.broken).toEqual([]);
   });
 

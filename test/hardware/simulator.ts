@@ -3,7 +3,7 @@ import { createInterface } from "node:readline";
 import { packageRoot } from "../../daemon/paths.ts";
 
 /** Clock of the simulated chip. */
-export const CYCLES_PER_MS = 16_000;
+export const CYCLES_PER_ms = 16_000;
 
 const BOARD_FOLDER = `${packageRoot}/firmware-protocol/boards/atmega328p`;
 const RUNNER_FOLDER = `${packageRoot}/test/hardware/simavr`;

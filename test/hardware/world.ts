@@ -1,4 +1,4 @@
-import { type ChipState, CYCLES_PER_MS, Simulator } from "./simulator.ts";
+import { type ChipState, CYCLES_PER_ms, Simulator } from "./simulator.ts";
 
 /** A byte stream with a delay, whole or not at all: a buffer that can stick. */
 class Pipe {
@@ -93,12 +93,12 @@ export class World {
 
   /** Lets so many milliseconds pass. */
   async pass(ms: number): Promise<void> {
-    await this.#runUntil(this.now + ms * CYCLES_PER_MS, () => false);
+    await this.#runUntil(this.now + ms * CYCLES_PER_ms, () => false);
   }
 
   /** Lets time pass until `done` holds; throws after `within_ms`. */
   async until(what: string, within_ms: number, done: () => boolean): Promise<void> {
-    if (!(await this.#runUntil(this.now + within_ms * CYCLES_PER_MS, done))) {
+    if (!(await this.#runUntil(this.now + within_ms * CYCLES_PER_ms, done))) {
       throw new Error(`${what} did not come within ${within_ms} ms of simulated time`);
     }
   }
@@ -106,7 +106,7 @@ export class World {
   /** The cycle at which the board's tick has (or had) this value; late by less than a tick. */
   async cycleOfTick(tick: number): Promise<number> {
     const now = await this.chip.peek32("tick");
-    return this.now + ((tick - now) | 0) * CYCLES_PER_MS;
+    return this.now + ((tick - now) | 0) * CYCLES_PER_ms;
   }
 
   /** Milliseconds from `cycle` to the first moment from then on without current; −1 while lit. */
@@ -114,7 +114,7 @@ export class World {
     let lit = false;
     for (const output of this.chip.outputs) {
       if (output.cycle <= cycle) lit = output.lit;
-      else if (!output.lit && lit) return (output.cycle - cycle) / CYCLES_PER_MS;
+      else if (!output.lit && lit) return (output.cycle - cycle) / CYCLES_PER_ms;
     }
     return lit ? -1 : 0;
   }
@@ -124,7 +124,7 @@ export class World {
     let drive = 0;
     for (const output of this.chip.outputs) {
       if (output.cycle <= cycle) drive = output.drive;
-      else if (output.drive === 0 && drive > 0) return (output.cycle - cycle) / CYCLES_PER_MS;
+      else if (output.drive === 0 && drive > 0) return (output.cycle - cycle) / CYCLES_PER_ms;
     }
     return drive > 0 ? -1 : 0;
   }
