@@ -4,7 +4,7 @@ import { tmpdir } from "node:os";
 import { join } from "node:path";
 import { crc32 } from "node:zlib";
 import Database from "better-sqlite3";
-import { describe, expect, test } from "vitest";
+import { describe, expect, onTestFinished, test } from "vitest";
 import type { FromRecorder } from "../../daemon/model/record-messages.ts";
 import { Ring, ringBytes } from "../../daemon/model/ring.ts";
 import { wall } from "../../daemon/model/times.ts";
@@ -56,6 +56,7 @@ const isFailing = (failing: boolean) => (m: FromRecorder) =>
 describe.skipIf(NO_DISK)("a small disk of its own (needs the right to mount)", () => {
   test("full: it says so, the daemon's side is not held up, and it goes on when there is room", async () => {
     const disk = smallDisk() as string;
+    onTestFinished(() => unmount(disk));
     const folder = join(disk, "data");
     const daemon = new Daemon(folder);
     await daemon.client.opened;
@@ -88,11 +89,11 @@ describe.skipIf(NO_DISK)("a small disk of its own (needs the right to mount)", (
     expect(events).toEqual([1, 2, 3, 4, 5, 6, 7, 8, 9, 10, 11]);
     expect(reader.latestLatch("north")?.cause).toBe(64);
     reader.close();
-    unmount(disk);
   });
 
   test("full at start, and read-only at start: refused with what to do", async () => {
     const disk = smallDisk() as string;
+    onTestFinished(() => unmount(disk));
     const ballast = join(disk, "ballast");
     spawnSync("dd", ["if=/dev/zero", `of=${ballast}`, "bs=4096"]);
     await expect(new Daemon(join(disk, "data")).client.opened).rejects.toMatchObject({
@@ -112,7 +113,6 @@ describe.skipIf(NO_DISK)("a small disk of its own (needs the right to mount)", (
     const reader = openReader(join(disk, "data"));
     expect(reader.events({ from: wall(0), to: wall(1e15) })).toHaveLength(1);
     reader.close();
-    unmount(disk);
   });
 });
 
