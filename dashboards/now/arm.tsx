@@ -1,15 +1,21 @@
 import type { VNode } from "preact";
-import { useState } from "preact/hooks";
+import { useEffect, useState } from "preact/hooks";
 import type { Snapshot, SwitchAnswer } from "../../daemon/desk/api.ts";
 import { ampsAsMeant } from "../words/format.ts";
 import { readBack } from "./arming.ts";
 import { ask } from "./asking.ts";
 
+/** How long an answer stays under the field, ms. */
+const ANSWER_MS = 15_000;
+
 /** The form for a current: typed, read back, and repeated by the button that sends it. */
 export function Arm({ now }: { now: Snapshot }): VNode {
-  if (now.watchOnly) return <p>This bench is only watched; light is not switched from here.</p>;
-  if (now.state === "tripped") return <p>Arming opens after the reset.</p>;
-  if (now.state === "offline") return <p>Arming opens when a controller is connected.</p>;
+  if (now.watchOnly) {
+    return <p class="bs-arm">This bench is only watched; light is not switched from here.</p>;
+  }
+  if (now.state === "tripped") return <p class="bs-arm">Arming opens after the reset.</p>;
+  if (now.state === "offline")
+    return <p class="bs-arm">Arming opens when a controller is connected.</p>;
   return <Field now={now} />;
 }
 
@@ -19,6 +25,13 @@ function Field({ now }: { now: Snapshot }): VNode {
   const [busy, setBusy] = useState(false);
   const verb = now.state === "standby" ? "arm" : "set";
   const meant = readBack(text, now);
+  // An answer is about the state it was given in, and not news for long.
+  useEffect(() => {
+    if (answer === undefined) return;
+    const timer = setTimeout(() => setAnswer(undefined), ANSWER_MS);
+    return () => clearTimeout(timer);
+  }, [answer]);
+  useEffect(() => setAnswer((old) => (old?.ok === true ? undefined : old)), [now.state]);
   const clear = (): void => setText("");
   const send = async (event: Event): Promise<void> => {
     event.preventDefault();

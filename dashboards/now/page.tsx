@@ -1,9 +1,10 @@
 import type { VNode } from "preact";
 import { useEffect } from "preact/hooks";
+import { confirmedAt } from "../words/dark.ts";
 import { dayAndZone } from "../words/format.ts";
 import { sentencesOf } from "../words/state.ts";
 import { Arm } from "./arm.tsx";
-import { DarkBlock, DarkSentence } from "./dark.tsx";
+import { DarkBlock, DarkSentence, darkAsked } from "./dark.tsx";
 import { Figure } from "./figure.tsx";
 import { Leaving, Needs } from "./needs.tsx";
 import { Said, TripAlert } from "./said.tsx";
@@ -51,8 +52,18 @@ function Bench(): VNode | null {
   useEffect(() => {
     document.title = silent ? `${now?.bench ?? ""}, not heard` : title;
   }, [title, silent]);
+  const armed = now?.state === "armed";
+  useEffect(() => {
+    // A new arming makes the last dark history.
+    if (armed) darkAsked.value = undefined;
+  }, [armed]);
   if (now === undefined) return null;
-  const sentences = sentencesOf(now, silence_ms.value, signedOut.value);
+  const dark_at = darkAsked.value === undefined ? undefined : confirmedAt(darkAsked.value);
+  const sentences = sentencesOf(now, {
+    silence_ms: silence_ms.value,
+    signedOut: signedOut.value,
+    dark_at,
+  });
   return (
     <>
       <TripAlert now={now} />

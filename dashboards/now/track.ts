@@ -99,10 +99,15 @@ export function rowsOf(answer: SeriesJson): Row[] {
       at.set(t, row);
     });
   }
-  for (const gap of answer.gaps) at.set(gap.from + 1, {});
-  return [...at]
+  for (const gap of answer.gaps) {
+    if (gap.to - gap.from > GAP_MS) at.set(gap.from + 1, {});
+  }
+  const rows = [...at]
     .sort(([a], [b]) => a - b)
     .map(([t, values]) => ({ ...unknownRow(t), ...values }) as Row);
+  // Before the first known row there was no bench to know of: nothing, rather than a gap.
+  const first = rows.findIndex((row) => !isUnknown(row));
+  return first < 0 ? [] : rows.slice(first);
 }
 
 /** Codes are never averaged: of several in one entry the highest is taken. */

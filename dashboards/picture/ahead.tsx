@@ -5,8 +5,18 @@ import { ExpectedMark } from "./marks.tsx";
 import { linear } from "./scale.ts";
 import type { Scene } from "./scene.ts";
 
-/** How far the future reaches on the picture, minutes. */
-export const AHEAD_min = 24;
+/** How far the future may reach on the picture, minutes. */
+const AHEADS_min = [3, 6, 12, 24] as const;
+const AHEAD_min_max = 24;
+/** The future gets at least this share of the past's length: about the same scale. */
+const AHEAD_SHARE = 0.6;
+
+/** The shortest future that has the past's scale and the expected moment in it. */
+export function aheadFor(span_min: number, forecast: Forecast): number {
+  const wanted = forecast.kind === "cap" ? forecast.in_min * 1.2 : 0;
+  const least = Math.max(span_min * AHEAD_SHARE, Math.min(wanted, AHEAD_min_max));
+  return AHEADS_min.find((min) => min >= least) ?? AHEAD_min_max;
+}
 /** A ceiling that would move by less than this share over the whole future stands still. */
 const STILL_SHARE = 0.02;
 /** How much past decides whether it stands still, ms, and how much at least must be known. */
@@ -30,7 +40,7 @@ export function forecastOf(columns: Columns, now: Scene["now"]): Forecast {
   const i = columns.t.findIndex((t) => t >= now.at - LOOK_BACK_MS);
   const [t, before] = [columns.t[i], columns.ceiling[i]];
   if (t === undefined || !isKnown(before) || now.at - t < LOOK_BACK_MS_MIN) return { kind: "none" };
-  const moved = (Math.abs(ceiling - before) * AHEAD_min * 60_000) / (now.at - t);
+  const moved = (Math.abs(ceiling - before) * AHEAD_min_max * 60_000) / (now.at - t);
   return moved < STILL_SHARE * ceiling ? { kind: "still" } : { kind: "none" };
 }
 
@@ -38,6 +48,8 @@ export function forecastOf(columns: Columns, now: Scene["now"]): Forecast {
 export function Ahead({ scene }: { scene: Scene }): VNode {
   const { layout, now, stale } = scene;
   const forecast: Forecast = stale === "" ? forecastOf(scene.columns, now) : { kind: "none" };
+  const span_min = (scene.axis.x0 * scene.axis.msPerPx) / 60_000;
+  const ahead_min = aheadFor(span_min, forecast);
   const middle = (scene.y(now.ceiling_mA ?? 0) + scene.y(now.floor_mA ?? scene.bounds.low)) / 2;
   const why =
     stale !== ""
@@ -47,7 +59,9 @@ export function Ahead({ scene }: { scene: Scene }): VNode {
         : "no forecast while dark";
   return (
     <g>
-      {forecast.kind === "cap" && <UntilCap scene={scene} in_min={forecast.in_min} />}
+      {forecast.kind === "cap" && (
+        <UntilCap scene={scene} in_min={forecast.in_min} ahead_min={ahead_min} />
+      )}
       {forecast.kind === "still" && <Still scene={scene} />}
       {forecast.kind === "none" ? (
         <text
@@ -64,7 +78,7 @@ export function Ahead({ scene }: { scene: Scene }): VNode {
           y={layout.words}
           text-anchor="end"
         >
-          {`+${AHEAD_min}\u00a0min`}
+          {`+${ahead_min}\u00a0min`}
         </text>
       )}
     </g>
@@ -75,13 +89,14 @@ export function Ahead({ scene }: { scene: Scene }): VNode {
  * The ceiling comes down to what was asked; from there on the current would go with it, and where to
  * is not known: a paler opening without an edge.
  */
-function UntilCap({ scene, in_min }: { scene: Scene; in_min: number }): VNode {
+function UntilCap(props: { scene: Scene; in_min: number; ahead_min: number }): VNode {
+  const { scene, in_min, ahead_min } = props;
   const { layout, now, y } = scene;
-  const x = linear(0, AHEAD_min, layout.g1, layout.width);
+  const x = linear(0, ahead_min, layout.g1, layout.width);
   const asked = now.asked_mA ?? now.aim_mA ?? now.current_mA ?? 0;
   const ceiling = now.ceiling_mA ?? asked;
-  const seen = in_min <= AHEAD_min;
-  const end_min = Math.min(in_min, AHEAD_min);
+  const seen = in_min <= ahead_min;
+  const end_min = Math.min(in_min, ahead_min);
   const share = in_min === 0 ? 1 : end_min / in_min;
   const endY = y(ceiling + (asked - ceiling) * share);
   const floorY = y(now.floor_mA ?? scene.bounds.low);

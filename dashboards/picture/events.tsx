@@ -60,9 +60,22 @@ export function Events({ scene }: { scene: Scene }): VNode {
   );
 }
 
-/** A refusal changed nothing on the bench; it is told to whoever asked, not to the picture. */
-const marked = ({ events }: Scene): readonly EventLine[] =>
-  events.filter((e) => e.kind !== "refused");
+/** Closer than this, px, two events of one kind are one mark. */
+const TOGETHER_PX = 12;
+
+/**
+ * Events that changed the bench. What was refused, told by the link or written to the record is for
+ * lists, not for the picture; a warning that comes again at once stands there once.
+ */
+function marked({ events, axis }: Scene): EventLine[] {
+  const out: EventLine[] = [];
+  for (const e of events) {
+    if (eventWord(e) === "" && e.weight !== "trip") continue;
+    const near = (o: EventLine): boolean => (e.at - o.at) / axis.msPerPx < TOGETHER_PX;
+    if (!out.some((o) => o.kind === e.kind && o.hazard === e.hazard && near(o))) out.push(e);
+  }
+  return out;
+}
 
 const tickX = ({ axis }: Scene, e: EventLine): number => Math.max(5, Math.round(xAt(axis, e.at)));
 
@@ -81,21 +94,21 @@ interface NamedTag extends Tag {
 /** Light follows arming by some seconds; the pair needs one word. */
 const AFTER_ARMING_MS = 60_000;
 
-function eventTags({ axis, layout, events }: Scene): NamedTag[] {
+function eventTags(scene: Scene): NamedTag[] {
+  const { axis, layout } = scene;
+  const events = marked(scene);
   const armed = events.filter((e) => e.kind === "armed");
   const told = events.filter(
     (e) =>
       e.kind !== "emitting" || !armed.some((a) => e.at >= a.at && e.at - a.at < AFTER_ARMING_MS),
   );
-  return told
-    .filter((e) => eventWord(e) !== "")
-    .map((e) => ({
-      x: xAt(axis, e.at),
-      text: layout.phone ? clock(e.at) : `${clock(e.at)} ${eventWord(e)}`,
-      rank: RANKS[e.weight],
-      class: CLASSES[e.weight],
-      isTime: false,
-    }));
+  return told.map((e) => ({
+    x: xAt(axis, e.at),
+    text: layout.phone ? clock(e.at) : `${clock(e.at)} ${eventWord(e)}`,
+    rank: RANKS[e.weight],
+    class: CLASSES[e.weight],
+    isTime: false,
+  }));
 }
 
 /** Words of the events, and between them the plain time where nothing happened. */

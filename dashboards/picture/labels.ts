@@ -52,6 +52,8 @@ export function placeTags(
   for (const { tag, index } of order) {
     const width = widthOf(tag.text, size);
     if (width > within.to - within.from) continue;
+    // The same words twice say nothing more; the marks stand at both.
+    if (placed.some((other) => tags[other.index]?.text === tag.text)) continue;
     const left = Math.min(Math.max(tag.x - width / 2, within.from), within.to - width);
     const row = taken.findIndex(
       (row, i) =>

@@ -51,7 +51,7 @@ function Held({ scene }: { scene: Scene }): VNode {
 
 /** A trip is a line that falls; its square stands on the fall. */
 function Trips({ scene }: { scene: Scene }): VNode {
-  const { events, axis, y, bounds, columns } = scene;
+  const { events, axis, y, bounds, columns, layout } = scene;
   const middle = y(bounds.low + 0.55 * (bounds.high - bounds.low));
   const fell = (at: number): boolean =>
     columns.t.some((t, i) => Math.abs(t - at) < 4000 && isMeant(columns.state[i] ?? 0));
@@ -60,7 +60,12 @@ function Trips({ scene }: { scene: Scene }): VNode {
       {events
         .filter((e) => e.kind === "trip" && fell(e.at))
         .map((e) => (
-          <Mark key={e.id} x={Math.round(xAt(axis, e.at))} y={middle} weight="trip" />
+          <Mark
+            key={e.id}
+            x={Math.min(Math.round(xAt(axis, e.at)), layout.g0 - 5)}
+            y={middle}
+            weight="trip"
+          />
         ))}
     </g>
   );

@@ -46,12 +46,16 @@ export function corridorBounds(
   return { low: low < 0.15 * top.high ? 0 : low, high: above(top.high + 0.02 * range, step) };
 }
 
+/** The output's scale reaches at least this high, mW: a converter's noise is no picture. */
+const OUTPUT_mW_min = 10;
+
 /** Heights of the output, mW, from what was measured and expected while light was meant. */
 export function outputBounds(lit: Iterable<number>): Bounds {
   const known = [...lit].filter((v) => Number.isFinite(v) && v > 0).sort((a, b) => a - b);
   const high = known[known.length - 1];
   const low = known[Math.floor(known.length * 0.05)];
-  if (high === undefined || low === undefined) return { low: 0, high: 1 };
+  if (high === undefined || low === undefined) return { low: 0, high: OUTPUT_mW_min };
+  if (high < OUTPUT_mW_min) return { low: 0, high: OUTPUT_mW_min };
   return {
     low: low > 0.5 * high ? low - 0.9 * (high * 1.06 - low) - 0.1 * high : 0,
     high: high * 1.06,
@@ -70,4 +74,4 @@ export const SPANS_min = [2, 5, 10, 20, 40] as const;
 
 /** The shortest span that holds a record of that age. */
 export const spanFor = (length_ms: number): number =>
-  SPANS_min.slice(1).find((span) => length_ms <= span * 60_000) ?? 40;
+  SPANS_min.find((span) => length_ms <= span * 60_000) ?? 40;

@@ -169,11 +169,12 @@ function Numbers({ scene }: { scene: Scene }): VNode {
       {text}
     </text>
   );
+  const wall = now.caseTrip_degC === null ? layout.case[0] : yCase(now.caseTrip_degC) + 2;
   const output = yOutput(Math.max(outputLow, now.output_mW ?? outputLow)) + 5;
   return (
     <g>
       {number(clamp(output, layout.output), power(now.output_mW))}
-      {number(clamp(yCase(now.case_degC ?? 0) + 5, layout.case), degrees(now.case_degC))}
+      {number(clamp(yCase(now.case_degC ?? 0) + 5, [wall, layout.case[1]]), degrees(now.case_degC))}
       {number(layout.words, `${clock(now.at)} ${stale === "" ? "now" : "last"}`)}
     </g>
   );

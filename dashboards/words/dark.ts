@@ -17,6 +17,12 @@ function wayWords(name: string, way: WayAnswer): string {
   return `${name} did not answer`;
 }
 
+/** When the first way confirmed dark; undefined while none has. */
+export function confirmedAt({ desk, port }: DarkAsked): number | undefined {
+  const at = [desk, port].filter((way) => way.is === "dark").map((way) => way.at);
+  return at.length === 0 ? undefined : Math.min(...at);
+}
+
 /** Says who confirmed dark, and when; and what to do where nobody did. */
 export function darkWords(asked: DarkAsked): DarkWords {
   const ways = [asked.desk, asked.port];

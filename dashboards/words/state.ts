@@ -9,9 +9,17 @@ export interface Sentences {
   readonly abnormal: string;
 }
 
+/** What the page knows beside the snapshot. */
+export interface Beside {
+  readonly silence_ms: number;
+  readonly signedOut: boolean;
+  /** When a dark asked from this page was confirmed, ms since 1970. */
+  readonly dark_at: number | undefined;
+}
+
 /** The daemon's own sentences, or the page's where nothing was heard of late. */
-export function sentencesOf(now: Snapshot, silence_ms: number, signedOut: boolean): Sentences {
-  if (signedOut) {
+export function sentencesOf(now: Snapshot, beside: Beside): Sentences {
+  if (beside.signedOut) {
     const abnormal = "This page is not signed in any more.";
     return {
       abnormal,
@@ -19,20 +27,26 @@ export function sentencesOf(now: Snapshot, silence_ms: number, signedOut: boolea
       next: "Next: run beamsitter open on the bench's computer. Dark still goes the second way from here.",
     };
   }
-  if (silence_ms > 0) return silentSentences(now, silence_ms);
+  if (beside.silence_ms > 0) return silentSentences(now, beside);
   return { abnormal: "", state: withCorridor(now), next: now.next };
 }
 
-function silentSentences(now: Snapshot, silence_ms: number): Sentences {
+/** A snapshot may have left while dark was already asked; the confirmation is the newer word. */
+const CONFIRMED_MS = 1000;
+
+function silentSentences(now: Snapshot, { silence_ms, dark_at }: Beside): Sentences {
   const abnormal = `Nothing heard from ${now.bench} for ${age(silence_ms)}.`;
   const lit = now.state === "armed" || now.state === "emitting";
   const said = lit
     ? amps(now.current_mA)
     : `that it is ${now.state === "tripped" ? "dark and tripped" : "dark"}`;
   const last = `It last said ${said}, at ${clockWithSeconds(now.at)}.`;
-  const whether = lit
-    ? ` Its permits end ${(now.link.term_ms / 1000).toFixed(1)}\u00a0s after the computer falls silent; whether it is dark is not known here.`
-    : "";
+  const confirmed = dark_at !== undefined && dark_at >= now.at - CONFIRMED_MS;
+  const whether = confirmed
+    ? ` Dark was confirmed at ${clockWithSeconds(dark_at)}.`
+    : lit
+      ? ` Its permits end ${(now.link.term_ms / 1000).toFixed(1)}\u00a0s after the computer falls silent; whether it is dark is not known here.`
+      : "";
   return {
     abnormal,
     state: `${abnormal} ${last}${whether}`,

@@ -52,7 +52,7 @@ describe("scales", () => {
 
   test("the span is the shortest that holds the record", () => {
     expect([0, 4, 6, 19, 39, 300].map((min) => spanFor(min * 60_000))).toEqual([
-      5, 5, 10, 20, 40, 40,
+      2, 5, 10, 20, 40, 40,
     ]);
   });
 });

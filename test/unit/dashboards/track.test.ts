@@ -29,6 +29,15 @@ describe("the past on a page", () => {
     expect(rows.map(isUnknown)).toEqual([false, false, true, false]);
   });
 
+  test("before the first sample there is no gap, and a short pause is none", () => {
+    const gaps = [
+      { from: -90_000, to: 1000 },
+      { from: 1200, to: 1900 },
+    ];
+    expect(rowsOf({ ...answer, gaps }).map((r) => r.t)).toEqual([1000, 2000, 9000]);
+    expect(rowsOf({ channels: {}, gaps, step_ms: 0 })).toEqual([]);
+  });
+
   test("codes are not averaged", () => {
     expect(rowsOf(answer)[0]?.maker).toBe(2);
   });

@@ -1,7 +1,7 @@
 import { describe, expect, test } from "vitest";
 import { readBack, typedCurrent } from "../../../dashboards/now/arming.ts";
 import { type DarkAsked, goDark } from "../../../dashboards/now/going-dark.ts";
-import { forecastOf } from "../../../dashboards/picture/ahead.tsx";
+import { aheadFor, forecastOf } from "../../../dashboards/picture/ahead.tsx";
 import { eventWord } from "../../../dashboards/picture/events.tsx";
 import { cursorSentence } from "../../../dashboards/words/cursor.ts";
 import { darkWords } from "../../../dashboards/words/dark.ts";
@@ -200,15 +200,25 @@ describe("what needs somebody", () => {
   });
 });
 
+const heard = { silence_ms: 0, signedOut: false, dark_at: undefined };
+
 describe("sentences", () => {
   test("a silent lit bench is not called dark, a stale page says its age", () => {
-    const said = sentencesOf(snapshotOf("calm", 0), 34_000, false);
+    const said = sentencesOf(snapshotOf("calm", 0), { ...heard, silence_ms: 34_000 });
     expect(plain(said.state)).toMatch(/^Nothing heard from north for 34 s\. It last said 1\.45 A/);
     expect(said.state).toContain("whether it is dark is not known here");
   });
 
+  test("a dark confirmed since then is said, one from before is not", () => {
+    const now = snapshotOf("calm", 1_000_000);
+    const said = (dark_at: number): string =>
+      sentencesOf(now, { ...heard, silence_ms: 5000, dark_at }).state;
+    expect(said(1_000_500)).toMatch(/Dark was confirmed at \d\d:\d\d:\d\d\.$/);
+    expect(said(900_000)).toContain("is not known here");
+  });
+
   test("the corridor is added where the daemon's sentence lacks it", () => {
-    const said = sentencesOf(snapshotOf("calm", 0), 0, false);
+    const said = sentencesOf(snapshotOf("calm", 0), heard);
     expect(plain(said.state)).toMatch(
       /The ceiling is 0\.\d\d A above, threshold 0\.\d\d A below\.$/,
     );
@@ -248,6 +258,13 @@ describe("the forecast", () => {
   test("is the daemon's time to the cap, or nothing", () => {
     expect(forecastOf(empty, snapshotOf("near", 0))).toEqual({ kind: "cap", in_min: 13 });
     expect(forecastOf(empty, snapshotOf("calm", 0))).toEqual({ kind: "none" });
+  });
+
+  test("reaches as far as the past's scale and the expected moment ask, 24 min at most", () => {
+    expect(aheadFor(5, { kind: "none" })).toBe(3);
+    expect(aheadFor(40, { kind: "still" })).toBe(24);
+    expect(aheadFor(5, { kind: "cap", in_min: 8 })).toBe(12);
+    expect(aheadFor(5, { kind: "cap", in_min: 500 })).toBe(24);
   });
 
   test("a ceiling that held still for minutes is drawn on, one that moves is not", () => {
