@@ -77,6 +77,12 @@ describe("a session on the simulated board", () => {
     await world.pass(2000); // permits of the ended session go on, and count for nothing
     expect(world.litSince(asked + FALL_ms * CYCLES_PER_ms)).toBe(false);
     expect(host.broken).toEqual([]);
+
+    // Not one sample and not one of its conversions was lost in all that time.
+    const [start] = host.samples;
+    const ticks = host.last.tick - (start?.tick ?? 0);
+    expect(host.last.seq - (start?.seq ?? 0)).toBe(ticks / 20);
+    expect(Math.abs(host.last.conv - (start?.conv ?? 0) - ticks)).toBeLessThanOrEqual(1);
   });
 
   test("a warming case lowers the drive along the curve, then trips and stays dark", async () => {

@@ -13,4 +13,5 @@ void startEarly(void) {
   start_flags = MCUSR;
   MCUSR = 0;
   wdt_enable(WDTO_500MS);
+  wdt_reset(); /* the longer time counts from here */
 }
