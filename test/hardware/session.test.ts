@@ -124,4 +124,23 @@ describe("a session on the simulated board", () => {
     await host.arm();
     await world.until("light again", 6000, () => host.last.values[0] === 900);
   });
+
+  test("mains pick-up on the case sensor averages out of a sample", async () => {
+    world = new World();
+    const host = new Host(world);
+    await world.chip.command("case 25");
+    const spread = async (hum: string): Promise<number> => {
+      await world?.chip.command(hum);
+      await world?.pass(100);
+      const from = host.samples.length;
+      await world?.pass(1000);
+      const counts = host.samples.slice(from).map((sample) => sample.values[2] ?? 0);
+      expect(counts.length).toBe(50);
+      return Math.max(...counts) - Math.min(...counts);
+    };
+    // 100 mV are 328 counts; 16 counts are one step of the converter.
+    expect(await spread("hum 100 50")).toBeLessThanOrEqual(8);
+    expect(await spread("hum 100 100")).toBeLessThanOrEqual(8);
+    expect(await spread("hum 100 60")).toBeGreaterThan(50); // so the pick-up does reach the reading
+  });
 });

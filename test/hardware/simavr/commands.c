@@ -102,6 +102,12 @@ static void doCase(char **w) {
   ok();
 }
 
+static void doHum(char **w) {
+  chip.plant.hum_mV = strtod(w[1], NULL);
+  chip.plant.hum_Hz = strtod(w[2], NULL);
+  ok();
+}
+
 static void doPin(char **w) {
   const bool on = w[2][0] == '1';
   if (strcmp(w[1], "key") == 0) chip.key = on;
@@ -183,6 +189,7 @@ static const struct {
   void (*act)(char **words);
 } table[] = {{"run", 1, doRun},       {"rx", 1, doRx},       {"break", 0, doBreak},
              {"adc", 2, doAdc},       {"case", 1, doCase},   {"pin", 2, doPin},
+             {"hum", 2, doHum},
              {"reset", 1, doReset},   {"hang", 1, doHang},   {"mend", 0, doMend},
              {"poke", 3, doPoke},     {"peek", 3, doPeek},   {"eeprom", 0, doEeprom},
              {"stack", 0, doStack},   {"state", 0, doState}};

@@ -7,6 +7,7 @@
  *   break                 put a serial break on it
  *   adc N MV|free         hold a converter input at MV millivolts, or let the bench drive it
  *   case DEGC|free        hold the case at a temperature, or let it warm by itself
+ *   hum MV HZ             mains pick-up on the case sensor's wire, amplitude and rate
  *   pin key|loop|button 0|1
  *   reset power|brown-out|external|watchdog
  *   hang SYMBOL / mend    put a jump-to-itself at a function / take it out again

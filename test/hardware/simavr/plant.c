@@ -50,7 +50,9 @@ void plant_step(struct plant *plant, uint16_t drive, bool stage) {
   }
 
   plant->input_mV[ADC_CURRENT] = bounded_mV(plant->current_mA * SENSE_MV_MA);
-  plant->input_mV[ADC_CASE] = thermistor_mV(plant->case_degC);
+  const double phase = 2.0 * M_PI * plant->hum_Hz * plant->steps++ * STEP_MS * 1e-3;
+  plant->input_mV[ADC_CASE] =
+      bounded_mV(thermistor_mV(plant->case_degC) + plant->hum_mV * sin(phase));
   plant->input_mV[ADC_PHOTODIODE] = bounded_mV(light * PHOTODIODE_MV_W);
   plant->input_mV[ADC_FORWARD] = bounded_mV(plant->current_mA > DARK_MA ? forward : 0.0);
   plant->input_mV[ADC_SINK] = thermistor_mV(plant->ambient_degC);

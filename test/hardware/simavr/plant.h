@@ -17,6 +17,8 @@ struct plant {
   double case_degC;
   bool caseHeld;      /* the case stays where it was put */
   double ambient_degC;
+  double hum_mV, hum_Hz; /* amplitude and rate of mains pick-up on the case sensor's wire */
+  uint32_t steps;        /* of 0.1 ms, since the start */
   int32_t forced_mV[PLANT_INPUTS]; /* a reading put in by hand, or -1 */
   uint32_t input_mV[PLANT_INPUTS]; /* what the converter's pins see */
 };
