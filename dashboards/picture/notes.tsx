@@ -47,7 +47,10 @@ function HeldSince({ scene }: { scene: Scene }): VNode {
   return (
     <g>
       {heldRuns(scene).map(({ from, to }) => {
-        const text = layout.phone ? "held" : `held down from ${clock(columns.t[from] ?? 0)}`;
+        // After a gap nobody knows since when.
+        const begins = Number.isFinite(columns.ceiling[from - 1] ?? Number.NaN);
+        const since = begins ? ` from ${clock(columns.t[from] ?? 0)}` : "";
+        const text = layout.phone ? "held" : `held down${since}`;
         const width = widthOf(text, layout.small);
         const x = columns.x[from] ?? 0;
         const lowest = Math.min(
@@ -88,13 +91,13 @@ function FloorName({ scene }: { scene: Scene }): VNode | null {
   );
 }
 
-/** Where the current dropped out under the scale, the line says so. */
+/** Where the current dropped out under the scale, the line says so; a phone has no room for it. */
 function DarkName({ scene }: { scene: Scene }): VNode | null {
   const { columns, y, layout, bounds } = scene;
   const isUnder = (i: number): true | undefined =>
     (columns.current[i] ?? Number.NaN) < Math.max(bounds.low, 20) ? true : undefined;
   const last = runs(columns.x.length, isUnder).pop();
-  if (last === undefined) return null;
+  if (last === undefined || layout.phone) return null;
   const x = Math.max((columns.x[last.from] ?? 0) + 8, layout.margin);
   const room = (columns.x[last.to - 1] ?? 0) - x;
   const long = "dark, 0\u00a0A; the scale is broken here";
