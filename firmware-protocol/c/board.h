@@ -62,6 +62,7 @@ struct core_board {
   /* Counts of current = counts of set times current_num / current_den. Both at most 1000. */
   uint16_t current_num;
   uint16_t current_den;
+  uint8_t current_step; /* counts between neighbouring values of one unaveraged conversion; 1 up */
 
   /* The divider's reading of the case sensor. */
   uint8_t case_warm_is_low; /* 1: an NTC to ground, the count falls as the case warms */

@@ -7,7 +7,7 @@
 #define OVER_MS 30u         /* a slow converter: one conversion over the ceiling, this long */
 #define OVER_IN_A_ROW 2u
 #define FAULT_READINGS 5u
-#define LSB_MIN 2u
+#define STEPS_MIN 2u /* of the converter: noise that is no over-current */
 
 /** Conversions since boot. The interrupt may count between two bytes: read until two agree. */
 uint16_t core_conversions(const struct core *c) {
@@ -47,7 +47,8 @@ static uint32_t greater(uint32_t a, uint32_t b) {
 void core_limit_conversions(struct core *c) {
   struct core_wire *w = &c->wire;
   uint32_t top = meant(c, core_peak_top(&c->ceilings));
-  uint32_t limit = greater(top + greater(top / 100u, LSB_MIN), c->board->dark_current);
+  uint32_t noise = (uint32_t)STEPS_MIN * c->board->current_step;
+  uint32_t limit = greater(top + greater(top / 100u, noise), c->board->dark_current);
   uint8_t other = (uint8_t)(w->limit_index ^ 1u);
   w->limit[other] = (uint16_t)(limit > 0xFFFFu ? 0xFFFFu : limit);
   w->limit_index = other;

@@ -12,7 +12,7 @@ static void clear(struct core *c) {
 static uint8_t board_sane(const CORE_FLASH struct core_board *b) {
   return (uint8_t)(b->tick_us >= 100u && b->tick_us <= 10000u && b->channel_count >= 1u &&
                    b->channel_count <= 64u && b->anchor_every >= 1u && b->rate_perS >= 1u &&
-                   b->current_den >= 1u && b->term_min >= 1u && b->term_min <= b->term_max &&
+                   b->current_den >= 1u && b->current_step >= 1u && b->term_min >= 1u && b->term_min <= b->term_max &&
                    b->term_max <= 32767u && b->slew_countsPerS <= 40000u);
 }
 

@@ -48,6 +48,7 @@ static struct core_board board = {
     .supply = 8,
     .current_num = 25, /* 0.5 mA over 0.16 mA */
     .current_den = 8,
+    .current_step = 4,
     .case_warm_is_low = 1,
     .case_over = 4326,
     .case_open = 15985,

@@ -7,7 +7,7 @@
 #include "firmware.h"
 #include "pins.h"
 
-#define STEPS_TO_READING 16u
+#define STEPS_TO_READING READING_STEP
 #define REFERENCE_SUPPLY _BV(REFS0) /* dividers and pulse width follow the supply alike */
 #define SLOTS 8u                    /* conversions a tick */
 #define NOTHING INPUTS              /* a conversion that only drains or settles the sampler */

@@ -26,6 +26,7 @@
 #endif
 #define SAMPLES_A_SECOND (1000u / SAMPLE_TICKS)
 
+#define READING_STEP 16u  /* one step of the converter */
 #define READING_MAX 16368 /* 16 × 1023 */
 
 /* What is read, in the order in which converter_sample gives it. */

@@ -55,6 +55,7 @@ static const __flash struct core_board board = {
     .supply = SUPPLY,
     .current_num = CURRENT_NUM,
     .current_den = CURRENT_DEN,
+    .current_step = READING_STEP,
     .case_warm_is_low = 1,
     .case_over = CASE_OVER_COUNTS,
     .case_open = CASE_OPEN_COUNTS,

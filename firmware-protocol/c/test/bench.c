@@ -83,7 +83,7 @@ void bench_make(struct bench *b) {
       .firmware = "bs-test-1", .serial = "TEST-1", .caps = "hand,toggle,inject",
       .tick_us = 1000, .absolute = 4400, .term_min = 150, .term_max = 10000, .fall_ms = 20,
       .rate_perS = 50, .channels = channels, .channel_count = 9, .anchor_every = 1,
-      .set = 0, .current = 1, .case_ = 2, .supply = 8, .current_num = 25, .current_den = 8,
+      .set = 0, .current = 1, .case_ = 2, .supply = 8, .current_num = 25, .current_den = 8, .current_step = 1,
       .case_warm_is_low = 1, .case_over = 4326, .case_open = 15985, .case_short = 569,
       .case_fault_ms = 100, .supply_low = 9000, .supply_high = 11000, .supply_ms = 50,
       .dark_current = 125, .dark_current_ms = 100, .follow_ms = 50, .converter_stop_ms = 200,

@@ -61,6 +61,18 @@ void test_over_ceiling_falls(struct bench *b) {
   CHECK(b->core.wire.limit[b->core.wire.limit_index] == 1875 + 18);
 }
 
+/* A converter whose step is 16 counts: two steps are its noise, whatever the ceiling. */
+void test_coarse_converter(struct bench *b) {
+  bench_make(b);
+  b->board.current_step = 16;
+  bench_boot(b, CORE_POWER);
+  CHECK(bench_light(b));
+  bench_permit(b, 300, 250, 500);
+  bench_run(b, 60);
+  /* Cap 300 of set is 937 of current; 1 % would be 9, less than one step. */
+  CHECK(b->core.wire.limit[b->core.wire.limit_index] == 937 + 32);
+}
+
 void test_over_aim(struct bench *b) {
   lit(b);
   b->stray = 3125 / 20 - 2;

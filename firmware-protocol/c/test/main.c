@@ -19,7 +19,7 @@ void check(uint8_t fact, const char *text, const char *file, int line) {
   T(permit_refusals) T(expiry) T(ring) T(anchors) T(wraps) T(delay_again) T(slew_and_clip)   \
   T(stuck_buffers) T(numbers) T(age_reported)                                                           \
   T(darks) T(cancels_apart) T(dark_ends_buffers) T(resets) T(reset_refused)                                   \
-  T(over_ceiling) T(over_ceiling_falls) T(over_aim) T(dark_current) T(case_over)             \
+  T(over_ceiling) T(over_ceiling_falls) T(coarse_converter) T(over_aim) T(dark_current) T(case_over)             \
   T(case_open_short) T(supply) T(converter_stops) T(key_loop) T(interrupted_pass) T(curve_limits)                \
   T(curve_loading) T(curve_rounds_down) T(peaks) T(curve_damaged) T(defect) T(injections) T(injection_rules)               \
   T(boots) T(torn_trip) T(torn_arm) T(mark_before_light) T(torn_dark) T(torn_reset) T(torn_counter)               \

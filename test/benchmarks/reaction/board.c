@@ -48,6 +48,7 @@ static struct core_board board = {
     .supply = CORE_NO_CHANNEL,
     .current_num = 25,
     .current_den = 8,
+    .current_step = 1,
     .case_warm_is_low = 1,
     .case_over = 4326,
     .case_open = 15985,
