@@ -6,7 +6,7 @@ import { EXIT, print, printJson, reasonOf } from "./say.ts";
 import { lives, type Notice, notices } from "./where.ts";
 
 /** How long switch and dark port may take before the daemon itself is ended, ms. */
-const WAY_MS_MAX = 700;
+const WAY_ms_MAX = 700;
 
 /**
  * `dark`: three ways, each simpler than the one before; the first two at once. Without `--on` every
@@ -68,7 +68,7 @@ async function askPort(notice: Notice): Promise<string> {
 async function within(way: Promise<Darkened>): Promise<Darkened | null> {
   let timer: NodeJS.Timeout | undefined;
   const late = new Promise<null>((resolve) => {
-    timer = setTimeout(() => resolve(null), WAY_MS_MAX);
+    timer = setTimeout(() => resolve(null), WAY_ms_MAX);
   });
   const told = await Promise.race([way.catch(() => null), late]);
   clearTimeout(timer);

@@ -16,7 +16,7 @@ interface Options {
 }
 
 /** A month: longer nights only fill the disk. */
-const NIGHT_MS_MAX = 31 * 24 * 3_600_000;
+const NIGHT_ms_MAX = 31 * 24 * 3_600_000;
 const SEED_MAX = 4_294_967_295;
 
 /** `demo`: a night of the built-in bench through the real link, judge and recorder. */
@@ -38,7 +38,7 @@ export const demoCommand = (): Command =>
 
 async function demo(options: Options): Promise<void> {
   const seed = wholeOf("--seed", options.seed, 0, SEED_MAX);
-  const length_ms = durationOf(options.for, NIGHT_MS_MAX);
+  const length_ms = durationOf(options.for, NIGHT_ms_MAX);
   const folder = options.data ?? null;
   if (folder !== null && existsSync(recordFile(folder))) {
     throw new Trouble(

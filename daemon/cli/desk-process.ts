@@ -9,8 +9,8 @@ import { reasonOf } from "./say.ts";
 /** A desk that has not told that it lives for this long is ended and started anew, ms. */
 const SILENCE_ms_MAX = 5000;
 /** Pause before a desk that ended is started again, ms: doubled each time until it listens. */
-const AGAIN_MS_MIN = 500;
-const AGAIN_MS_MAX = 30_000;
+const AGAIN_ms_MIN = 500;
+const AGAIN_ms_MAX = 30_000;
 /** Less favoured than the judging thread by this much (nice). */
 const NICE = 10;
 
@@ -26,7 +26,7 @@ export class DeskProcess {
   #heard_ms = 0;
   #ended = false;
   readonly #watch: NodeJS.Timeout;
-  #again_ms = AGAIN_MS_MIN;
+  #again_ms = AGAIN_ms_MIN;
   /** What was told last; the same is not told again until the desk has listened. */
   #told = "";
   #ready: ((failed: string) => void)[] = [];
@@ -108,7 +108,7 @@ export class DeskProcess {
     this.#tell("The desk ended and is started again; judge and record go on.");
     this.#settle("it ended before it listened");
     setTimeout(() => this.#ended || this.#start(), this.#again_ms);
-    this.#again_ms = Math.min(AGAIN_MS_MAX, this.#again_ms * 2);
+    this.#again_ms = Math.min(AGAIN_ms_MAX, this.#again_ms * 2);
   }
 
   #tell(words: string): void {
@@ -133,7 +133,7 @@ export class DeskProcess {
     this.#heard_ms = performance.now();
     if (message.kind === "listening") {
       this.#port = message.port;
-      this.#again_ms = AGAIN_MS_MIN;
+      this.#again_ms = AGAIN_ms_MIN;
       this.#told = "";
       this.#settle("");
     } else if (message.kind === "failed") {

@@ -13,7 +13,7 @@ interface Options {
 }
 
 /** A day; whoever wants longer leaves `--for` out. */
-const LISTEN_MS_MAX = 24 * 3_600_000;
+const LISTEN_ms_MAX = 24 * 3_600_000;
 
 /** `listen PORT`: raw lines as they come, each with what is broken about it. Sends nothing. */
 export const listenCommand = (): Command =>
@@ -31,7 +31,7 @@ export const listenCommand = (): Command =>
 
 async function listen(path: string, options: Options): Promise<void> {
   const baud = wholeOf("--baud", options.baud, 50, 4_000_000);
-  const for_ms = options.for === undefined ? null : durationOf(options.for, LISTEN_MS_MAX);
+  const for_ms = options.for === undefined ? null : durationOf(options.for, LISTEN_ms_MAX);
   const transport = new SerialTransport({ path, baud });
   let lines = 0;
   const why = await new Promise<string>((resolve) => {

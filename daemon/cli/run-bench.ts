@@ -35,9 +35,9 @@ export interface RunOptions {
 const RING_RATE_MAX_perS = 250;
 const RING_SECONDS = 60;
 /** How long an ending daemon waits for the board to report dark, for the disk, and to be read, ms. */
-const DARK_MS_MAX = 400;
-const CLOSE_MS_MAX = 3000;
-const SHOWN_MS_MAX = 300;
+const DARK_ms_MAX = 400;
+const CLOSE_ms_MAX = 3000;
+const SHOWN_ms_MAX = 300;
 
 /** What a daemon is made of while it starts. */
 interface Parts {
@@ -76,15 +76,15 @@ export async function runBench(options: RunOptions): Promise<void> {
       await bringPerson(socket);
     }
     supervision.leave(await end.wait(options.for_ms));
-    await until(DARK_MS_MAX, () => !isLit(supervision));
+    await until(DARK_ms_MAX, () => !isLit(supervision));
     telling.ended(lastWords(bench, supervision));
   } finally {
     supervision.close();
     parts.desk?.close();
     removeNotice(bench.name);
     rmSync(socket, { force: true });
-    await Promise.race([recording.client.close(), pause(CLOSE_MS_MAX)]);
-    await until(SHOWN_MS_MAX, () => telling.isShown);
+    await Promise.race([recording.client.close(), pause(CLOSE_ms_MAX)]);
+    await until(SHOWN_ms_MAX, () => telling.isShown);
     telling.close();
   }
 }

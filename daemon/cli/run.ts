@@ -15,7 +15,7 @@ interface Options {
 }
 
 /** The longest that a timer of the system can wait, a little over 24 days. */
-const FOR_MS_MAX = 24 * 24 * 3_600_000;
+const FOR_ms_MAX = 24 * 24 * 3_600_000;
 
 /** `run`: the daemon, in the foreground. Without a file it runs the built-in bench. */
 export const runCommand = (): Command =>
@@ -42,7 +42,7 @@ export const runCommand = (): Command =>
         folder: options.data ?? null,
         port: wholeOf("--port", options.port, 0, 65_535),
         listen: options.listen ?? null,
-        for_ms: options.for === undefined ? null : durationOf(options.for, FOR_MS_MAX),
+        for_ms: options.for === undefined ? null : durationOf(options.for, FOR_ms_MAX),
         stayDark: options.stayDark === true,
         json: options.json === true,
       }),

@@ -5,7 +5,7 @@ import { codeOf } from "./say.ts";
 /** Lines kept while nobody takes them: a stopped terminal may be let go again. */
 const WAITING_LINES_MAX = 500;
 /** Pause before a full terminal or pipe is tried again, ms. */
-const AGAIN_MS = 100;
+const AGAIN_ms = 100;
 
 /**
  * Standard output of a running daemon. A terminal that was stopped (Ctrl-S, a hung connection, a
@@ -66,7 +66,7 @@ export class Terminal {
     const rest = this.#rest?.subarray(error === null ? written : 0) ?? null;
     this.#rest = rest === null || rest.length === 0 ? null : rest;
     if (error === null) this.#next();
-    else setTimeout(() => this.#next(), AGAIN_MS).unref();
+    else setTimeout(() => this.#next(), AGAIN_ms).unref();
   }
 }
 

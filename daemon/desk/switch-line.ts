@@ -10,7 +10,7 @@ export interface SwitchPort {
 }
 
 /** Pause between two attempts to reach the switch, ms. */
-const AGAIN_MS = 1000;
+const AGAIN_ms = 1000;
 
 const silent = (verb: string): SwitchAnswer => ({
   id: 0,
@@ -82,6 +82,6 @@ export class SwitchLine {
     this.#port = undefined;
     this.#onLine(false);
     clearTimeout(this.#again);
-    this.#again = setTimeout(() => void this.open(), AGAIN_MS);
+    this.#again = setTimeout(() => void this.open(), AGAIN_ms);
   }
 }

@@ -6,7 +6,7 @@ import { readBack } from "./arming.ts";
 import { ask } from "./asking.ts";
 
 /** How long an answer stays under the field, ms. */
-const ANSWER_MS = 15_000;
+const ANSWER_ms = 15_000;
 
 /** The form for a current: typed, read back, and repeated by the button that sends it. */
 export function Arm({ now }: { now: Snapshot }): VNode {
@@ -28,7 +28,7 @@ function Field({ now }: { now: Snapshot }): VNode {
   // An answer is about the state it was given in, and not news for long.
   useEffect(() => {
     if (answer === undefined) return;
-    const timer = setTimeout(() => setAnswer(undefined), ANSWER_MS);
+    const timer = setTimeout(() => setAnswer(undefined), ANSWER_ms);
     return () => clearTimeout(timer);
   }, [answer]);
   useEffect(() => setAnswer((old) => (old?.ok === true ? undefined : old)), [now.state]);

@@ -21,7 +21,7 @@ export interface DarkAsked {
 export type Way = "desk" | "port";
 
 /** A way that says nothing for this long has failed, ms. The other one has long answered by then. */
-export const WAY_MS_MAX = 2500;
+export const WAY_ms_MAX = 2500;
 
 export type Post = (address: string, signal: AbortSignal) => Promise<Response>;
 
@@ -29,7 +29,7 @@ const asked: WayAnswer = { is: "asked", words: "", at: 0 };
 
 async function go(address: string, post: Post, now: () => number): Promise<WayAnswer> {
   try {
-    const response = await post(address, AbortSignal.timeout(WAY_MS_MAX));
+    const response = await post(address, AbortSignal.timeout(WAY_ms_MAX));
     const { ok, words } = (await response.json()) as { ok: boolean; words: string };
     return { is: ok ? "dark" : "refused", words, at: now() };
   } catch (error) {

@@ -1,6 +1,6 @@
 import type { EventLine, SeriesJson } from "../../daemon/desk/api.ts";
 import { addEvents, track } from "./state.ts";
-import { RECORDED, TRACK_MS } from "./track.ts";
+import { RECORDED, TRACK_ms } from "./track.ts";
 
 /** Entries asked for: about one in two seconds, finer than any screen's pixel of 40 minutes. */
 const PIXELS = 1400;
@@ -16,7 +16,7 @@ async function get<T>(address: string): Promise<T | undefined> {
  * begins at now: that the record does not answer is no reason to show nothing.
  */
 export async function loadHistory(now: number): Promise<void> {
-  const window = `from=${Math.round(now - TRACK_MS)}&to=${Math.round(now)}`;
+  const window = `from=${Math.round(now - TRACK_ms)}&to=${Math.round(now)}`;
   const channels = Object.values(RECORDED).join(",");
   const [series, past] = await Promise.allSettled([
     get<SeriesJson>(`/api/series?channels=${channels}&${window}&pixels=${PIXELS}`),

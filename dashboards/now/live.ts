@@ -6,7 +6,7 @@ import { addEvents, clock_ms, heard_ms, lineUp, signedOut, snapshot, track } fro
 /** Shortest time between two drawings, ms: digits that change faster cannot be read. */
 const DRAW_ms = 250;
 /** Pause before the page asks again after it lost the stream, ms. */
-const AGAIN_MS = 2000;
+const AGAIN_ms = 2000;
 /** No message at all for this long: the connection is given up and made anew, ms. */
 const SILENT_ms = 6000;
 
@@ -44,7 +44,7 @@ function onMessage(text: string): void {
 /** Whether the desk still knows this browser; it may have got a new token meanwhile. */
 async function checkSignedIn(): Promise<void> {
   try {
-    const response = await fetch("/api/snapshot", { signal: AbortSignal.timeout(AGAIN_MS) });
+    const response = await fetch("/api/snapshot", { signal: AbortSignal.timeout(AGAIN_ms) });
     signedOut.value = response.status === 401;
   } catch {
     // No answer at all: the silence itself is shown by its age.
@@ -65,7 +65,7 @@ function connect(): void {
     if (socket !== mine) return;
     socket = undefined;
     void checkSignedIn();
-    setTimeout(connect, AGAIN_MS);
+    setTimeout(connect, AGAIN_ms);
   };
 }
 

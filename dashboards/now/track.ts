@@ -19,10 +19,10 @@ const QUANTITIES = Object.keys(RECORDED) as Quantity[];
 export type Row = Readonly<Record<Quantity, number>> & { readonly t: number };
 
 /** As much past as the widest picture shows, and a little more. */
-export const TRACK_MS = 41 * 60_000;
-const ROW_MS = 1000;
+export const TRACK_ms = 41 * 60_000;
+const ROW_ms = 1000;
 /** Longer than this without a row is a gap, ms. */
-const GAP_MS = 2500;
+const GAP_ms = 2500;
 
 const STATES = ["offline", "standby", "armed", "emitting", "tripped"];
 const MAKERS = "derating junction bench user plan hazard unattended board".split(" ");
@@ -62,19 +62,19 @@ export class Track {
   append(s: Snapshot): void {
     const row = s.state === "offline" ? unknownRow(s.at) : rowOf(s);
     const last = this.rows[this.rows.length - 1];
-    if (last !== undefined && row.t < last.t - ROW_MS) {
+    if (last !== undefined && row.t < last.t - ROW_ms) {
       // Civil time was set back. Rows from the future would never leave the picture.
       this.rows = this.rows.filter((kept) => kept.t <= row.t);
       this.version++;
     }
-    if (last !== undefined && Math.floor(last.t / ROW_MS) === Math.floor(row.t / ROW_MS)) {
+    if (last !== undefined && Math.floor(last.t / ROW_ms) === Math.floor(row.t / ROW_ms)) {
       this.rows[this.rows.length - 1] = row;
       return;
     }
-    if (last !== undefined && row.t - last.t > GAP_MS) this.rows.push(unknownRow(last.t + ROW_MS));
+    if (last !== undefined && row.t - last.t > GAP_ms) this.rows.push(unknownRow(last.t + ROW_ms));
     this.rows.push(row);
-    if (this.rows[0] !== undefined && row.t - this.rows[0].t > TRACK_MS + 60_000) {
-      this.rows = this.rows.filter((kept) => row.t - kept.t <= TRACK_MS);
+    if (this.rows[0] !== undefined && row.t - this.rows[0].t > TRACK_ms + 60_000) {
+      this.rows = this.rows.filter((kept) => row.t - kept.t <= TRACK_ms);
     }
   }
 
@@ -100,7 +100,7 @@ export function rowsOf(answer: SeriesJson): Row[] {
     });
   }
   for (const gap of answer.gaps) {
-    if (gap.to - gap.from > GAP_MS) at.set(gap.from + 1, {});
+    if (gap.to - gap.from > GAP_ms) at.set(gap.from + 1, {});
   }
   const rows = [...at]
     .sort(([a], [b]) => a - b)

@@ -20,8 +20,8 @@ export function aheadFor(span_min: number, forecast: Forecast): number {
 /** A ceiling that would move by less than this share over the whole future stands still. */
 const STILL_SHARE = 0.02;
 /** How much past decides whether it stands still, ms, and how much at least must be known. */
-const LOOK_BACK_MS = 180_000;
-const LOOK_BACK_MS_MIN = 60_000;
+const LOOK_BACK_ms = 180_000;
+const LOOK_BACK_ms_MIN = 60_000;
 
 /** What may happen: when the ceiling meets the current, or that all stands still, or nothing known. */
 export type Forecast =
@@ -37,9 +37,9 @@ export function forecastOf(columns: Columns, now: Scene["now"]): Forecast {
   }
   const ceiling = now.ceiling_mA;
   if (!isKnown(ceiling)) return { kind: "none" };
-  const i = columns.t.findIndex((t) => t >= now.at - LOOK_BACK_MS);
+  const i = columns.t.findIndex((t) => t >= now.at - LOOK_BACK_ms);
   const [t, before] = [columns.t[i], columns.ceiling[i]];
-  if (t === undefined || !isKnown(before) || now.at - t < LOOK_BACK_MS_MIN) return { kind: "none" };
+  if (t === undefined || !isKnown(before) || now.at - t < LOOK_BACK_ms_MIN) return { kind: "none" };
   const moved = (Math.abs(ceiling - before) * AHEAD_min_max * 60_000) / (now.at - t);
   return moved < STILL_SHARE * ceiling ? { kind: "still" } : { kind: "none" };
 }

@@ -92,7 +92,7 @@ interface NamedTag extends Tag {
 }
 
 /** Light follows arming by some seconds; the pair needs one word. */
-const AFTER_ARMING_MS = 60_000;
+const AFTER_ARMING_ms = 60_000;
 
 function eventTags(scene: Scene): NamedTag[] {
   const { axis, layout } = scene;
@@ -100,7 +100,7 @@ function eventTags(scene: Scene): NamedTag[] {
   const armed = events.filter((e) => e.kind === "armed");
   const told = events.filter(
     (e) =>
-      e.kind !== "emitting" || !armed.some((a) => e.at >= a.at && e.at - a.at < AFTER_ARMING_MS),
+      e.kind !== "emitting" || !armed.some((a) => e.at >= a.at && e.at - a.at < AFTER_ARMING_ms),
   );
   return told.map((e) => ({
     x: xAt(axis, e.at),

@@ -32,7 +32,7 @@ export function sentencesOf(now: Snapshot, beside: Beside): Sentences {
 }
 
 /** A snapshot may have left while dark was already asked; the confirmation is the newer word. */
-const CONFIRMED_MS = 1000;
+const CONFIRMED_ms = 1000;
 
 function silentSentences(now: Snapshot, { silence_ms, dark_at }: Beside): Sentences {
   const abnormal = `Nothing heard from ${now.bench} for ${age(silence_ms)}.`;
@@ -41,7 +41,7 @@ function silentSentences(now: Snapshot, { silence_ms, dark_at }: Beside): Senten
     ? amps(now.current_mA)
     : `that it is ${now.state === "tripped" ? "dark and tripped" : "dark"}`;
   const last = `It last said ${said}, at ${clockWithSeconds(now.at)}.`;
-  const confirmed = dark_at !== undefined && dark_at >= now.at - CONFIRMED_MS;
+  const confirmed = dark_at !== undefined && dark_at >= now.at - CONFIRMED_ms;
   const whether = confirmed
     ? ` Dark was confirmed at ${clockWithSeconds(dark_at)}.`
     : lit

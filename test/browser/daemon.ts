@@ -5,8 +5,8 @@ import { join } from "node:path";
 import { SwitchClient } from "../../daemon/control/client.ts";
 import { builtFile } from "../../daemon/paths.ts";
 
-const START_MS_MAX = 60_000;
-const STOP_MS_MAX = 10_000;
+const START_ms_MAX = 60_000;
+const STOP_ms_MAX = 10_000;
 
 /** A real daemon on its built-in bench, in folders of its own. */
 export interface RunningDaemon {
@@ -59,8 +59,8 @@ function addressFrom(child: ChildProcess): Promise<string> {
   return new Promise((resolve, reject) => {
     let said = "";
     const timer = setTimeout(
-      () => reject(new Error(`no address within ${START_MS_MAX} ms; it said: ${said}`)),
-      START_MS_MAX,
+      () => reject(new Error(`no address within ${START_ms_MAX} ms; it said: ${said}`)),
+      START_ms_MAX,
     );
     const hear = (chunk: Buffer): void => {
       said += chunk;
@@ -87,7 +87,7 @@ function childOf(parent: number, part: string): number {
 function ended(child: ChildProcess): Promise<void> {
   return new Promise((resolve) => {
     if (child.exitCode !== null || child.signalCode !== null) return resolve();
-    const timer = setTimeout(() => child.kill("SIGKILL"), STOP_MS_MAX);
+    const timer = setTimeout(() => child.kill("SIGKILL"), STOP_ms_MAX);
     child.on("exit", () => {
       clearTimeout(timer);
       resolve();

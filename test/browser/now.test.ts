@@ -11,7 +11,7 @@ import { type RunningDaemon, startDaemon } from "./daemon.ts";
 
 const SIZE = { width: 1280, height: 900 };
 /** The machine may be busy; nothing here is a promise about time. */
-const SLOW_MS = 30_000;
+const SLOW_ms = 30_000;
 
 let browser: Browser;
 let daemon: RunningDaemon;
@@ -29,7 +29,7 @@ afterAll(async () => {
 beforeEach(async () => {
   context = await profile(browser, SIZE);
   page = await context.newPage();
-  page.setDefaultTimeout(SLOW_MS);
+  page.setDefaultTimeout(SLOW_ms);
 });
 afterEach(async () => {
   await context.close();

@@ -3,7 +3,7 @@ import { Chain, north } from "./bench.ts";
 
 /** The term and the fall of the stage: with a dead host, light ends within these. */
 const TERM_ms = north.controller.term_ms;
-const FALL_MS = 20;
+const FALL_ms = 20;
 
 describe("the chain on a simulated clock", () => {
   test("connects dark, loads its curve, arms, holds the emission delay, and reaches its current", () => {
@@ -26,7 +26,7 @@ describe("the chain on a simulated clock", () => {
     const c = new Chain();
     c.light(1000);
     c.deaf = true;
-    expect(c.until(() => !c.lit, TERM_ms + FALL_MS)).toBeLessThanOrEqual(TERM_ms + FALL_MS);
+    expect(c.until(() => !c.lit, TERM_ms + FALL_ms)).toBeLessThanOrEqual(TERM_ms + FALL_ms);
     c.deaf = false;
     c.until(() => c.state === "tripped", 200);
     c.run(20_000);
@@ -92,7 +92,7 @@ describe("the chain on a simulated clock", () => {
     c.light(600);
     c.board.hands[hand] = false;
     // The stage's own fall comes on top of the cut.
-    expect(c.until(() => !c.lit, 100)).toBeLessThanOrEqual(10 + FALL_MS);
+    expect(c.until(() => !c.lit, 100)).toBeLessThanOrEqual(10 + FALL_ms);
     c.until(() => c.state === "tripped", 500);
     expect(c.events.find((e) => e.kind === "trip")?.hazard).toBe(cause);
   });
@@ -101,7 +101,7 @@ describe("the chain on a simulated clock", () => {
     const c = new Chain();
     c.light(600);
     expect(c.ask({ id: 1, verb: "dark", asker: "person" }).ok).toBe(true);
-    expect(c.until(() => !c.lit, 200)).toBeLessThanOrEqual(2 + FALL_MS);
+    expect(c.until(() => !c.lit, 200)).toBeLessThanOrEqual(2 + FALL_ms);
     c.until(() => c.state === "standby", 200);
     expect(c.events.some((e) => e.kind === "trip")).toBe(false);
   });
