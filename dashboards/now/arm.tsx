@@ -64,13 +64,7 @@ function Field({ now }: { now: Snapshot }): VNode {
         />{" "}
         A
       </p>
-      <div aria-live="polite">
-        {meant.kind === "refused" && <p class="bs-read bs-read--refused">{meant.words}</p>}
-        {meant.kind === "meant" && <p class="bs-read">{meant.words}</p>}
-        {answer !== undefined && (
-          <p class={answer.ok ? "bs-read" : "bs-read bs-read--refused"}>{answer.words}</p>
-        )}
-      </div>
+      <Told meant={meant} answer={answer} />
       {meant.kind === "meant" && (
         <p class="bs-arm__act">
           <button type="submit" class="bs-go" disabled={busy}>
@@ -82,5 +76,22 @@ function Field({ now }: { now: Snapshot }): VNode {
         </p>
       )}
     </form>
+  );
+}
+
+/** What was read back of the typed current, and what the judge answered. */
+function Told(props: {
+  readonly meant: ReturnType<typeof readBack>;
+  readonly answer: SwitchAnswer | undefined;
+}): VNode {
+  const { meant, answer } = props;
+  return (
+    <div aria-live="polite">
+      {meant.kind === "refused" && <p class="bs-read bs-read--refused">{meant.words}</p>}
+      {meant.kind === "meant" && <p class="bs-read">{meant.words}</p>}
+      {answer !== undefined && (
+        <p class={answer.ok ? "bs-read" : "bs-read bs-read--refused"}>{answer.words}</p>
+      )}
+    </div>
   );
 }

@@ -91,6 +91,13 @@ const WORDS: Readonly<Record<Kind, readonly [string, string]>> = {
   standby: ["north is dark and in standby.", "Next: nothing until you arm it."],
 };
 
+const stepDown = (at: number): Snapshot["warnings"][number] => ({
+  hazard: "output-low",
+  words:
+    "Output stepped down 2.6 % while current and case held still. Something was touched or came loose",
+  since: at - 6.4 * 60_000,
+});
+
 /** What the switch would say at the end of that evening. */
 export function snapshotOf(kind: Kind, at: number): Snapshot {
   const m = moment(kind, at, MINUTES * 60);
@@ -131,17 +138,7 @@ export function snapshotOf(kind: Kind, at: number): Snapshot {
       .replace(/1\.\d\d A(?= as asked|, held)/, shown)
       .replace(/\d+ mW/, `${m.output.toFixed(0)} mW`),
     next,
-    warnings:
-      kind === "near"
-        ? [
-            {
-              hazard: "output-low",
-              words:
-                "Output stepped down 2.6 % while current and case held still. Something was touched or came loose",
-              since: at - 6.4 * 60_000,
-            },
-          ]
-        : [],
+    warnings: kind === "near" ? [stepDown(at)] : [],
     age_ms: 12,
     link: {
       phase: "running",
