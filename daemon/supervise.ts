@@ -202,7 +202,7 @@ export class Supervision {
         say({ ok: true, reason: "", words: "", snapshot: this.snapshot() });
         break;
       case "mean":
-        say(meaningOf(this.loop, request.current_mA));
+        say(meaningOf(this.loop, request.current_mA, this.#link?.trouble() ?? ""));
         break;
       case "rawlog":
         say({ ok: true, reason: "", words: "", lines: this.loop.session.log.words() });

@@ -25,6 +25,8 @@ export class SwitchClient {
   readonly #socket: Socket;
   readonly #waiting = new Map<number, Waiting>();
   #next = 1;
+  /** Why the connection ended, for whoever still waits. */
+  #why = "The daemon closed the connection before it answered.";
   #onPush: (p: SwitchPush) => void = () => {};
   /** Called once when the connection ends, however it ends. */
   onClose: () => void = () => {};
@@ -85,13 +87,16 @@ export class SwitchClient {
   }
 
   #line(line: string): void {
-    const value: unknown = JSON.parse(line);
-    const push = SwitchPush.safeParse(value);
-    if (push.success) {
-      this.#onPush(push.data);
-      return;
-    }
-    const answer = SwitchAnswer.parse(value);
+    const message = messageOf(line);
+    if (message === null) {
+      this.#why =
+        "The daemon says what this program does not understand; is it of another version?";
+      this.#socket.destroy();
+    } else if ("push" in message) this.#onPush(message);
+    else this.#answered(message);
+  }
+
+  #answered(answer: SwitchAnswer): void {
     const waiting = this.#waiting.get(answer.id);
     if (waiting === undefined) return;
     this.#waiting.delete(answer.id);
@@ -102,9 +107,23 @@ export class SwitchClient {
   #closed(): void {
     for (const w of this.#waiting.values()) {
       clearTimeout(w.timer);
-      w.reject(new SwitchSilent("The daemon closed the connection before it answered."));
+      w.reject(new SwitchSilent(this.#why));
     }
     this.#waiting.clear();
     this.onClose();
   }
+}
+
+/** What the daemon said, or null where it is nothing that this program knows. */
+function messageOf(line: string): SwitchPush | SwitchAnswer | null {
+  let value: unknown;
+  try {
+    value = JSON.parse(line);
+  } catch {
+    return null;
+  }
+  const push = SwitchPush.safeParse(value);
+  if (push.success) return push.data;
+  const answer = SwitchAnswer.safeParse(value);
+  return answer.success ? answer.data : null;
 }

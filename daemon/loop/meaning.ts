@@ -2,6 +2,7 @@ import { STATE } from "../judge/records.ts";
 import { expectedOutput_mW } from "../judge/tables.ts";
 import { readBack, refusalWords } from "../judge/words.ts";
 import { formatQuantity } from "../model/quantities.ts";
+import { linkWords } from "./link-words.ts";
 import type { Loop } from "./loop.ts";
 import type { LoopAnswer } from "./ports.ts";
 import { namesOf } from "./snapshot.ts";
@@ -10,8 +11,9 @@ import { namesOf } from "./snapshot.ts";
  * What arming at a current would mean just now, in a sentence to read back before it is typed
  * again; or why it would be refused. Changes nothing: the judge decides anew when it is asked to arm.
  * @param current_mA the current meant
+ * @param port what the port says; empty while lines come
  */
-export function meaningOf(loop: Loop, current_mA: number): LoopAnswer {
+export function meaningOf(loop: Loop, current_mA: number, port: string): LoopAnswer {
   const { plan, bench } = loop;
   const { view } = loop.out;
   const refused = (reason: Parameters<typeof refusalWords>[0], value: number): LoopAnswer => ({
@@ -20,7 +22,10 @@ export function meaningOf(loop: Loop, current_mA: number): LoopAnswer {
     words: refusalWords(reason, current_mA, value, view),
   });
   if (view.state === STATE.tripped) return refused("tripped", view.cause);
-  if (view.state === STATE.offline || plan === null) return refused("offline", Number.NaN);
+  if (view.state === STATE.offline || plan === null) {
+    const why = linkWords(loop, port);
+    return { ...refused("offline", Number.NaN), ...(why === "" ? {} : { words: why }) };
+  }
   if (view.state !== STATE.standby) return refused("not-standby", Number.NaN);
   if (!(current_mA >= 0)) return refused("below-zero", Number.NaN);
   if (!(current_mA <= view.ceiling_mA)) {

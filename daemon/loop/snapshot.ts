@@ -51,7 +51,8 @@ export function snapshotOf(loop: Loop, beside: Beside): Snapshot {
     at: beside.wall_ms,
     state: STATES[view.state] ?? "offline",
     capped: (view.flags & FLAG.capped) !== 0,
-    delayLeft_ms: Math.max(0, view.delayLeft_ms),
+    // Not a number until the judge has met a board.
+    delayLeft_ms: Math.max(0, known(view.delayLeft_ms) ?? 0),
     watchOnly: (view.flags & FLAG.watchOnly) !== 0,
     builtIn: bench.controller.transport.kind === "built-in",
     hand: loop.session.manifest !== null && (loop.session.sample.status & (1 << 8)) !== 0,

@@ -71,11 +71,19 @@ export class Daemon {
   readonly address: string;
   readonly client: SwitchClient;
 
-  private constructor(child: ChildProcess, place: Place, address: string, client: SwitchClient) {
+  private constructor(
+    child: ChildProcess,
+    place: Place,
+    address: string,
+    client: SwitchClient,
+    bench: string,
+  ) {
     this.child = child;
     this.place = place;
     this.address = address;
     this.client = client;
+    const folder = join(place.env.XDG_RUNTIME_DIR ?? "", "beamsitter");
+    this.notice = JSON.parse(readFileSync(join(folder, `${bench}.json`), "utf8"));
   }
 
   /** Starts `beamsitter run` with these arguments; resolves when it has printed its page's address. */
@@ -93,16 +101,15 @@ export class Daemon {
       child.on("exit", (code) => reject(new Error(`the daemon ended with ${code}: ${stderr}`)));
     });
     const socket = join(place.env.XDG_RUNTIME_DIR ?? "", "beamsitter", `${bench}.socket`);
-    return new Daemon(child, place, address, await SwitchClient.connect(socket));
+    return new Daemon(child, place, address, await SwitchClient.connect(socket), bench);
   }
+
+  /** What the daemon left for its clients to find, as it was when the daemon had started. */
+  readonly notice: { readonly darkPort: number; readonly pid: number; readonly page: string };
 
   get darkPort(): number {
-    const notice = join(this.place.env.XDG_RUNTIME_DIR ?? "", "beamsitter");
-    const name = this.bench;
-    return JSON.parse(readFileSync(join(notice, `${name}.json`), "utf8")).darkPort;
+    return this.notice.darkPort;
   }
-
-  bench = "north";
 
   async snapshot(): Promise<Snapshot> {
     const { snapshot } = await this.client.ask({ verb: "status" });
