@@ -2,7 +2,7 @@ import type { VNode } from "preact";
 import { useEffect, useState } from "preact/hooks";
 import type { Snapshot, SwitchAnswer } from "../../daemon/desk/api.ts";
 import { ampsAsMeant } from "../words/format.ts";
-import { readBack } from "./arming.ts";
+import { type Meant, readBack } from "./arming.ts";
 import { ask } from "./asking.ts";
 
 /** How long an answer stays under the field, ms. */
@@ -64,7 +64,7 @@ function Field({ now }: { now: Snapshot }): VNode {
         />{" "}
         A
       </p>
-      <Told meant={meant} answer={answer} />
+      <Read meant={meant} answer={answer} />
       {meant.kind === "meant" && (
         <p class="bs-arm__act">
           <button type="submit" class="bs-go" disabled={busy}>
@@ -79,12 +79,8 @@ function Field({ now }: { now: Snapshot }): VNode {
   );
 }
 
-/** What was read back of the typed current, and what the judge answered. */
-function Told(props: {
-  readonly meant: ReturnType<typeof readBack>;
-  readonly answer: SwitchAnswer | undefined;
-}): VNode {
-  const { meant, answer } = props;
+/** The typed current read back, or refused; then what the switch answered. */
+function Read({ meant, answer }: { meant: Meant; answer: SwitchAnswer | undefined }): VNode {
   return (
     <div aria-live="polite">
       {meant.kind === "refused" && <p class="bs-read bs-read--refused">{meant.words}</p>}

@@ -208,7 +208,7 @@ describe("after a trip", () => {
 /** North with its trip level a little above the room, so that it trips within seconds of light. */
 function benchThatTrips(): string {
   const north = readFileSync(assetFile("daemon/bench-file/benches/north.yaml"), "utf8");
-  const low = north.replace("warn: 42 °C", "warn: 24 °C").replace("trip: 50 °C", "trip: 25 °C");
+  const low = north.replace("warn: 42 °C", "warn: 23 °C").replace("trip: 50 °C", "trip: 24 °C");
   const file = join(mkdtempSync(join(tmpdir(), "beamsitter-bench-")), "north.yaml");
   writeFileSync(file, low);
   return file;

@@ -138,25 +138,40 @@ export function snapshotOf(kind: Kind, at: number): Snapshot {
       .replace(/1\.\d\d A(?= as asked|, held)/, shown)
       .replace(/\d+ mW/, `${m.output.toFixed(0)} mW`),
     next,
-    warnings: kind === "near" ? [stepDown(at)] : [],
+    warnings: warningsOf(kind, at),
     age_ms: 12,
-    link: {
-      phase: "running",
-      words: "",
-      rate_perS: 50,
-      term_ms: 500,
-      fall_ms: 5,
-      loopDelay_ms: 4,
-      loopDelayWorst_ms: 31,
-      lost: 0,
-      garbled: 0,
-      badLines: 0,
-    },
+    link: LINK,
     recorder: { behind_ms: 0, words: "" },
-    safety:
-      "Not a certified safety function. Eyewear for 808 nm and 1064 nm, the enclosure, the key and the hardware interlock come first; local rules and your laser safety officer decide.",
+    safety: SAFETY,
   };
 }
+
+const LINK: Snapshot["link"] = {
+  phase: "ready",
+  words: "",
+  rate_perS: 50,
+  term_ms: 500,
+  fall_ms: 5,
+  loopDelay_ms: 4,
+  loopDelayWorst_ms: 31,
+  lost: 0,
+  garbled: 0,
+  badLines: 0,
+};
+
+const SAFETY =
+  "Not a certified safety function. Eyewear for 808 nm and 1064 nm, the enclosure, the key and the hardware interlock come first; local rules and your laser safety officer decide.";
+
+const warningsOf = (kind: Kind, at: number): Snapshot["warnings"] =>
+  kind === "near"
+    ? [
+        {
+          hazard: "output-low",
+          words: "The output stepped down 2.6 % while current and case held still",
+          since: at - 6.4 * 60_000,
+        },
+      ]
+    : [];
 
 /** The evening's events. */
 export function eventsOf(kind: Kind, at: number): EventLine[] {
