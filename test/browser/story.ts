@@ -91,13 +91,6 @@ const WORDS: Readonly<Record<Kind, readonly [string, string]>> = {
   standby: ["north is dark and in standby.", "Next: nothing until you arm it."],
 };
 
-const stepDown = (at: number): Snapshot["warnings"][number] => ({
-  hazard: "output-low",
-  words:
-    "Output stepped down 2.6 % while current and case held still. Something was touched or came loose",
-  since: at - 6.4 * 60_000,
-});
-
 /** What the switch would say at the end of that evening. */
 export function snapshotOf(kind: Kind, at: number): Snapshot {
   const m = moment(kind, at, MINUTES * 60);
