@@ -1,3 +1,4 @@
+import type { Conversion } from "../model/conversion.ts";
 import { KINDS, type QuantityKind } from "../model/quantity-units.ts";
 import type { Finding } from "./problem.ts";
 import type { FreeQuantity } from "./schema-channels.ts";
@@ -34,6 +35,15 @@ export function kindFindings(name: string, units: ChannelUnits): Finding[] {
     ...(perCount === null ? [] : mismatch([name, "linear", "per-count"], perCount, step)),
     ...(offset === null ? [] : mismatch([name, "linear", "offset"], offset, value)),
   ];
+}
+
+/**
+ * Unit in which the program holds a converted channel; null where its name is free and its law
+ * linear, so that only the bench file's words know it.
+ */
+export function convertedUnit(name: string, { law }: Conversion): string | null {
+  const kind = BY_NAME[name] ?? (law.kind === "linear" ? null : "temperature");
+  return kind === null ? null : KINDS[kind].held;
 }
 
 /** A step in kelvin is a step of a temperature. */

@@ -2,14 +2,11 @@ import { createWriteStream } from "node:fs";
 import { Readable } from "node:stream";
 import { pipeline } from "node:stream/promises";
 import type { Command } from "commander";
-import { parseBench } from "../bench-file/parse.ts";
-import type { Channel } from "../model/manifest.ts";
-import { toUnit } from "../physics/convert.ts";
 import { exportCsv } from "../record/export.ts";
-import { RecordProblem } from "../record/problem.ts";
-import { openReader, type RecordReader } from "../record/reader.ts";
+import type { RecordReader } from "../record/reader.ts";
 import { Sessions } from "./answers.ts";
 import { commandOf } from "./command.ts";
+import { namesOf, openOrSay, unitOf } from "./record-units.ts";
 import { codeOf, EXIT, printJson, reasonOf, Trouble } from "./say.ts";
 import { recordFolder } from "./where.ts";
 
@@ -43,7 +40,8 @@ export const exportCommand = (): Command =>
     .action((file: string | undefined, options: Options) => exportRecord(file ?? "-", options));
 
 async function exportRecord(file: string, options: Options): Promise<void> {
-  const reader = openOrSay(options.data ?? recordFolder(options.on));
+  const folder = options.data ?? recordFolder(options.on);
+  const { reader, conversions } = openOrSay(folder);
   try {
     if (options.json === true) {
       printJson(Sessions, reader.sessions());
@@ -51,10 +49,11 @@ async function exportRecord(file: string, options: Options): Promise<void> {
     }
     const lines = exportCsv(reader, {
       units: options.unitsLine === true ? "second-line" : "brackets",
+      unitOf: ({ name, unit }) => unitOf(name, unit, conversions),
       ...(options.session === undefined ? {} : { session: sessionOf(options.session, reader) }),
       ...(options.from === undefined ? {} : { from: momentOf(options.from) }),
       ...(options.to === undefined ? {} : { to: momentOf(options.to) }),
-      ...(options.channels === undefined ? {} : { channels: options.channels.split(",") }),
+      ...(options.channels === undefined ? {} : { channels: namesOf(options.channels, reader) }),
     });
     const to = file === "-" ? process.stdout : createWriteStream(file);
     await pipeline(Readable.from(lines), to, { end: file !== "-" });
@@ -66,27 +65,6 @@ async function exportRecord(file: string, options: Options): Promise<void> {
     throw new Trouble(`The export stopped: ${reasonOf(error)}.`, "Nothing of the record changed.");
   } finally {
     reader.close();
-  }
-}
-
-/** The reader, with the conversions of the bench file that was in use last. */
-function openOrSay(folder: string): RecordReader {
-  try {
-    const plain = openReader(folder);
-    const last = plain.sessions().at(-1);
-    const parsed = last === undefined ? null : parseBench(plain.benchText(last.benchFile));
-    if (parsed === null || !parsed.ok) return plain;
-    plain.close();
-    const { conversions } = parsed.bench;
-    return openReader(folder, (channel: Channel, counts: number) => {
-      const conversion = conversions[channel.name];
-      return conversion === undefined ? counts * channel.perCount : toUnit(conversion, counts);
-    });
-  } catch (error) {
-    if (error instanceof RecordProblem) {
-      throw new Trouble(`${error.what} ${error.found}`, error.remedy);
-    }
-    throw error;
   }
 }
 

@@ -1,5 +1,6 @@
 import { STATES } from "../judge/records.ts";
 import { MAKERS } from "../model/ceiling.ts";
+import type { Channel } from "../model/manifest.ts";
 import { ROW } from "../model/ring.ts";
 import type { Block } from "./blocks.ts";
 import { type Chunk, type ChunkFilter, ChunkIndex } from "./chunks.ts";
@@ -16,6 +17,8 @@ export interface CsvQuery {
   readonly to?: number;
   /** Names as in the manifest or `judge.*`; all that there are where none are named. */
   readonly channels?: readonly string[];
+  /** Unit in which the reader's converter gives a channel; the manifest's own where left out. */
+  readonly unitOf?: (channel: Channel) => string;
   /** Units in brackets behind the names, or on a line of their own below them. */
   readonly units: "brackets" | "second-line";
 }
@@ -39,7 +42,9 @@ const WORDS: Readonly<Record<string, readonly string[]>> = {
 export function* exportCsv(reader: RecordReader, query: CsvQuery): Generator<string> {
   const parts = reader.parts();
   const filter = filterOf(query);
-  const units = new Map(reader.channels(filter).map((channel) => [channel.name, channel.unit]));
+  const { unitOf = (channel: Channel) => channel.unit } = query;
+  const channels = reader.channels(filter);
+  const units = new Map(channels.map((channel) => [channel.name, unitOf(channel)]));
   const names = query.channels ?? [...units.keys()];
   yield header(names, units, query.units);
   const index = new ChunkIndex(parts.db, filter);

@@ -153,6 +153,18 @@ export class RecordReader implements SeriesStore {
     );
   }
 
+  /** Text of the bench file by which the last input was judged, or null in an empty record. */
+  lastBenchText(): string | null {
+    const text = this.#db
+      .prepare(
+        `SELECT text FROM journal JOIN bench_files ON bench_files.id = journal.bench_file
+         ORDER BY run DESC, input DESC LIMIT 1`,
+      )
+      .pluck()
+      .get();
+    return typeof text === "string" ? text : null;
+  }
+
   manifest(id: number): Manifest {
     return this.#manifests.of(id);
   }

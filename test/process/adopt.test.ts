@@ -133,8 +133,7 @@ describe("adopt", () => {
     const reader = openReader(folder());
     const window = { from: wall(0), to: wall(Date.now() + 60_000) };
     const adopted = reader.events(window).find((e) => e.kind === "adopted");
-    const last = reader.sessions().at(-1);
-    const text = reader.benchText(last?.benchFile ?? -1);
+    const text = reader.lastBenchText();
     reader.close();
     expect(String(adopted?.data.words)).toContain("derating goes from");
     expect(text).toBe(LOWER);

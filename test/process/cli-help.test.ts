@@ -108,7 +108,7 @@ describe("slips, at the built command line", () => {
   test("a trouble is told in words, and with --json as one object that says the same", async () => {
     const { code, stderr, stdout } = await runCli(place, "arm", "1.2", "--json");
     expect(code).toBe(2);
-    expect(stderr).toContain('Found "1.2"; wanted a current with its unit');
+    expect(stderr).toContain("Found 1.2; wanted a current with its unit");
     expect(JSON.parse(stdout)).toMatchObject({ ok: false, reason: "trouble", exit: 2 });
     const nobody = await runCli(place, "status", "--on", "south");
     expect(nobody.code).toBe(3);

@@ -50,9 +50,9 @@ describe("demo", () => {
     const lines = readFileSync(file, "utf8").trimEnd().split("\r\n");
     expect(lines).toHaveLength(kept.samples + 1);
     const head = (lines[0] ?? "").split(",");
-    expect(head).toContain("case [°C]");
+    expect(head).toContain("case [degC]");
     expect(head).toContain("judge.ceiling [mA]");
-    const at = head.indexOf("case [°C]");
+    const at = head.indexOf("case [degC]");
     const highest = Math.max(...lines.slice(1).map((line) => Number(line.split(",")[at])));
     expect(highest).toBeCloseTo(kept.highestCaseC, 1);
   });
