@@ -32,6 +32,8 @@ export async function runDesk(configText: string): Promise<void> {
   });
   // Without its daemon a desk shows nothing and could do nothing; the next one starts afresh.
   process.on("disconnect", () => process.exit(0));
+  // It may have been killed while this process was still loading: that event is over by now.
+  if (process.connected === false) process.exit(0);
 
   const live = new Live();
   const line = new SwitchLine(() => SwitchClient.connect(config.switchPath), {
