@@ -158,6 +158,14 @@ export class Store {
     if (ops.length > 0) this.#write(ops);
   }
 
+  /**
+   * Runs `work` on the record as one transaction: all of it, or where it throws, nothing. For what
+   * a person keeps beside the samples (notes, packs that come back); it must be over in an instant.
+   */
+  within<T>(work: (db: Database.Database) => T): T {
+    return this.#db.transaction(() => work(this.#db)).immediate();
+  }
+
   nextRun(): number {
     return this.#next.run++;
   }
