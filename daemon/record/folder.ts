@@ -10,7 +10,7 @@ import {
 import { join } from "node:path";
 import Database from "better-sqlite3";
 import { errorCode, problemOf, RecordProblem } from "./problem.ts";
-import { checkIfUsed, checkVersion, migrate } from "./schema.ts";
+import { checkIfUsed, checkVersion, migrate, standInForMissing } from "./schema.ts";
 
 /** The one file of a data folder that holds everything recorded. */
 export const recordFile = (folder: string): string => join(folder, "record.sqlite");
@@ -129,6 +129,7 @@ export function openForReading(folder: string): Database.Database {
   try {
     db = new Database(file, { readonly: true, fileMustExist: true, timeout: 1000 });
     checkVersion(db, file);
+    standInForMissing(db);
     return db;
   } catch (error) {
     db?.close();

@@ -80,6 +80,71 @@ export const MIGRATIONS: readonly string[] = [
     lit INTEGER NOT NULL
   ) WITHOUT ROWID;
   `,
+  // Version 2. Rollups of a minute and an hour are in the controller's counts, like the blocks, so
+  // that a better calibration re-reads them; the views minutes and hours give them in the
+  // manifest's units, with the standard deviation, for any SQLite tool. Their t is civil time.
+  `
+  CREATE TABLE rollup_10s (
+    id INTEGER PRIMARY KEY, block0 INTEGER NOT NULL, block1 INTEGER NOT NULL,
+    session INTEGER NOT NULL REFERENCES sessions(id), run INTEGER NOT NULL REFERENCES runs(id),
+    manifest INTEGER NOT NULL REFERENCES manifests(id), t0 REAL NOT NULL, t1 REAL NOT NULL,
+    n INTEGER NOT NULL, codec INTEGER NOT NULL, crc INTEGER NOT NULL, blob BLOB NOT NULL
+  );
+  CREATE INDEX rollup_10s_t0 ON rollup_10s(t0);
+  CREATE TABLE channels (
+    id INTEGER PRIMARY KEY, bench TEXT NOT NULL, name TEXT NOT NULL, unit TEXT NOT NULL,
+    per_count REAL NOT NULL, UNIQUE (bench, name, unit, per_count)
+  );
+  CREATE TABLE rollup_1min (
+    channel INTEGER NOT NULL REFERENCES channels(id), minute INTEGER NOT NULL, n INTEGER NOT NULL,
+    min INTEGER NOT NULL, mean REAL NOT NULL, max INTEGER NOT NULL, m2 REAL NOT NULL,
+    PRIMARY KEY (channel, minute)
+  ) WITHOUT ROWID;
+  CREATE TABLE rollup_1h (
+    channel INTEGER NOT NULL REFERENCES channels(id), hour INTEGER NOT NULL, n INTEGER NOT NULL,
+    min INTEGER NOT NULL, mean REAL NOT NULL, max INTEGER NOT NULL, m2 REAL NOT NULL,
+    PRIMARY KEY (channel, hour)
+  ) WITHOUT ROWID;
+  CREATE VIEW minutes AS
+    SELECT c.bench, c.name, c.unit, r.minute * 60000 AS wall_ms,
+      datetime(r.minute * 60, 'unixepoch') AS utc, r.n, min(r.min * c.per_count, r.max * c.per_count)
+      AS min, r.mean * c.per_count AS mean, max(r.min * c.per_count, r.max * c.per_count) AS max,
+      sqrt(max(0, r.m2) / r.n) * abs(c.per_count) AS standard_deviation
+    FROM rollup_1min r JOIN channels c ON c.id = r.channel;
+  CREATE VIEW hours AS
+    SELECT c.bench, c.name, c.unit, r.hour * 3600000 AS wall_ms,
+      datetime(r.hour * 3600, 'unixepoch') AS utc, r.n, min(r.min * c.per_count, r.max * c.per_count)
+      AS min, r.mean * c.per_count AS mean, max(r.min * c.per_count, r.max * c.per_count) AS max,
+      sqrt(max(0, r.m2) / r.n) * abs(c.per_count) AS standard_deviation
+    FROM rollup_1h r JOIN channels c ON c.id = r.channel;
+  CREATE TABLE notes (
+    id INTEGER PRIMARY KEY, bench TEXT NOT NULL, wall_ms REAL NOT NULL, session INTEGER,
+    who TEXT NOT NULL, text TEXT NOT NULL, picture BLOB, picture_type TEXT
+  );
+  CREATE INDEX notes_wall ON notes(wall_ms);
+  CREATE TABLE tags (
+    session INTEGER NOT NULL REFERENCES sessions(id), tag TEXT NOT NULL,
+    PRIMARY KEY (session, tag)
+  ) WITHOUT ROWID;
+  CREATE INDEX epochs_part ON epochs(bench, part, wall_ms);
+  -- What has been carried elsewhere ("influx", "pack", "csv" ...): retention looks here.
+  CREATE TABLE exported (
+    bench TEXT NOT NULL, target TEXT NOT NULL, from_wall_ms REAL NOT NULL,
+    to_wall_ms REAL NOT NULL, at_wall_ms REAL NOT NULL,
+    PRIMARY KEY (bench, target, from_wall_ms)
+  ) WITHOUT ROWID;
+  -- Stretches whose full rate stays for ever: black boxes, sweeps, what a person marked.
+  CREATE TABLE kept (
+    id INTEGER PRIMARY KEY, bench TEXT NOT NULL, from_wall_ms REAL NOT NULL,
+    to_wall_ms REAL NOT NULL, why TEXT NOT NULL
+  );
+  -- What retention took away: the row of the block stays, with codec 255 and no bytes.
+  CREATE TABLE retired (
+    id INTEGER PRIMARY KEY, bench TEXT NOT NULL, at_wall_ms REAL NOT NULL,
+    from_wall_ms REAL NOT NULL, to_wall_ms REAL NOT NULL, blocks INTEGER NOT NULL,
+    samples INTEGER NOT NULL, bytes INTEGER NOT NULL, rule TEXT NOT NULL
+  );
+  `,
 ];
 
 /** Version that this program writes. */
@@ -123,5 +188,21 @@ export function migrate(db: Database.Database): void {
       db.pragma(`application_id = ${APPLICATION_ID}`);
       db.pragma(`user_version = ${version + 1}`);
     }).immediate();
+  }
+}
+
+/**
+ * Gives a file of an older version, opened for reading only, the tables and views that it lacks, as
+ * empty ones in memory: whoever reads need not ask which version it is. The file is not touched.
+ */
+export function standInForMissing(db: Database.Database): void {
+  const version = pragma(db, "user_version");
+  if (version >= SCHEMA_VERSION) return;
+  db.pragma("temp_store = MEMORY");
+  for (const step of MIGRATIONS.slice(version)) {
+    for (const statement of step.split(";")) {
+      const made = statement.replace(/CREATE (TABLE|VIEW) /, "CREATE TEMP $1 ");
+      if (made !== statement) db.exec(made);
+    }
   }
 }
