@@ -169,6 +169,43 @@ static void echo_sample(uint32_t seq) {
   if (write(terminal, line, (size_t)length) != length) sent_us[seq & (SENT - 1)] = now_us();
 }
 
+/* One pass of the board under measurement: what came, what the core makes of it, what was accepted. */
+static void pass_permits(uint32_t tick, uint32_t *seen, double *since_us) {
+  receive_permits();
+  core_inputs(&core, 1, 1, 1, 0);
+  core_pass(&core, tick);
+  if (!core.permit.seen || core.permit.n == *seen) return;
+  *seen = core.permit.n;
+  if (drive > 0 && *since_us == 0) *since_us = now_us();
+  if (*since_us > 0) keep(now_us() - sent_us[*seen & (SENT - 1)]);
+}
+
+static void write_sample(uint32_t tick) {
+  /* 1.05 W/A above 0.40 A, at 0.1 mW a count: what the bench file of the measurement says. */
+  int32_t light = drive > 800 ? ((int32_t)drive - 800) * 105 / 20 : 0;
+  int32_t values[4] = {drive, (int32_t)drive * 25 / 8, CASE_25_DEGC, light};
+  /* The sample written next carries the next number. */
+  sent_us[(core.seq + 1) & (SENT - 1)] = now_us();
+  core_conversion(&core, (uint16_t)values[1], tick);
+  core_reading(&core, values, tick);
+}
+
+/* Sleeps until bytes come or the next sample is due, 200 us at most. */
+static void rest(double next_us) {
+  struct pollfd wait = {terminal, POLLIN, 0};
+  struct timespec left = {0, 200000};
+  double until_us = next_us - now_us();
+  if (until_us > 0 && until_us < 200) left.tv_nsec = (long)(until_us * 1000);
+  ppoll(&wait, 1, &left, 0);
+}
+
+static void tell(uint32_t samples, int dark) {
+  qsort(figures, figure_count, sizeof *figures, compare);
+  printf("{\"samples\":%u,\"n\":%zu,\"p50\":%.4f,\"p99\":%.4f,\"p999\":%.4f,\"worst\":%.4f,"
+         "\"dark\":%d}\n",
+         samples, figure_count, at_share(0.5), at_share(0.99), at_share(0.999), at_share(1), dark);
+}
+
 int main(int argc, char **argv) {
   if (argc != 4) return 2;
   prctl(PR_SET_PDEATHSIG, SIGKILL);
@@ -180,54 +217,25 @@ int main(int argc, char **argv) {
   board.rate_perS = (uint16_t)rate;
   /* 64 anchors must span the term: at 1000/s every 20th sample is one. */
   board.anchor_every = (uint8_t)(rate > 100 ? rate / 50 : 1);
-  double begin = now_us(), next = begin, begin_measuring = 0, end = 0;
-  uint32_t seq = 0, measured = 0, seen = 0;
+  double begin = now_us(), next = begin, since_us = 0;
+  uint32_t samples = 0, seq = 0, seen = 0;
   if (!echo) core_init(&core, &board, &port, CORE_POWER);
-  for (;;) {
+  while (since_us == 0 || now_us() < since_us + seconds * 1e6) {
     double now = now_us();
     uint32_t tick = (uint32_t)((now - begin) / 1000);
-    if (begin_measuring > 0 && end == 0) end = begin_measuring + seconds * 1e6;
-    if (end > 0 && now > end) break;
     if (now >= next) {
       next += 1e6 / rate;
       if (next < now) next = now + 1e6 / rate;
-      if (echo) {
-        echo_sample(++seq);
-        if (begin_measuring > 0) measured++;
-      } else {
-        /* 1.05 W/A above 0.40 A, at 0.1 mW a count: what the bench file of the measurement says. */
-        int32_t light = drive > 800 ? ((int32_t)drive - 800) * 105 / 20 : 0;
-        int32_t values[4] = {drive, (int32_t)drive * 25 / 8, CASE_25_DEGC, light};
-        /* The sample written next carries the next number. */
-        sent_us[(core.seq + 1) & (SENT - 1)] = now_us();
-        core_conversion(&core, (uint16_t)values[1], tick);
-        core_reading(&core, values, tick);
-        if (begin_measuring > 0) measured++;
-      }
+      if (echo) echo_sample(++seq);
+      else write_sample(tick);
+      samples += since_us > 0;
     }
     if (echo) {
       receive_echo();
-      begin_measuring = echo_since_us;
-    } else {
-      receive_permits();
-      core_inputs(&core, 1, 1, 1, 0);
-      core_pass(&core, tick);
-      if (core.permit.seen && core.permit.n != seen) {
-        seen = core.permit.n;
-        if (drive > 0 && begin_measuring == 0) begin_measuring = now_us();
-        if (begin_measuring > 0) keep(now_us() - sent_us[seen & (SENT - 1)]);
-      }
-    }
-    struct pollfd wait = {terminal, POLLIN, 0};
-    struct timespec left = {0, 200000};
-    double until = next - now_us();
-    if (until > 0 && until < 200) left.tv_nsec = (long)(until * 1000);
-    ppoll(&wait, 1, &left, 0);
+      since_us = echo_since_us;
+    } else pass_permits(tick, &seen, &since_us);
+    rest(next);
   }
-  qsort(figures, figure_count, sizeof *figures, compare);
-  printf("{\"samples\":%u,\"n\":%zu,\"p50\":%.4f,\"p99\":%.4f,\"p999\":%.4f,\"worst\":%.4f,"
-         "\"dark\":%d}\n",
-         measured, figure_count, at_share(0.5), at_share(0.99), at_share(0.999), at_share(1),
-         !echo && core.state == CORE_TRIPPED ? (int)core.cause : -1);
+  tell(samples, !echo && core.state == CORE_TRIPPED ? (int)core.cause : -1);
   return 0;
 }
