@@ -1,7 +1,7 @@
 import type { Command } from "commander";
 import { ask, confirm, tell } from "./ask.ts";
 import { type DaemonOptions, daemonCommandOf } from "./command.ts";
-import { EXIT, print, Trouble } from "./say.ts";
+import { EXIT, print, resetWords, Trouble } from "./say.ts";
 import { currentOf } from "./values.ts";
 import { pickNotice } from "./where.ts";
 
@@ -32,6 +32,8 @@ async function arm(words: readonly string[], options: Options): Promise<void> {
   const meant = await ask(bench, { verb: "mean", current_mA });
   if (!meant.ok) {
     tell(meant, options);
+    const { cause } = snapshot;
+    if (cause !== null && options.json !== true) print(resetWords(bench, cause.id));
     return;
   }
   if (options.json !== true) {

@@ -67,7 +67,8 @@ export async function confirm({ wanted, given, same }: Again): Promise<void> {
   }
   const typed = await typedLine(`Type ${wanted} again to go on, anything else to leave it: `);
   if (typed !== null && same(typed)) return;
-  throw new Trouble("Left as it was.", "Nothing was changed.", EXIT.refused);
+  if (typed === null) process.stderr.write("\n");
+  throw new Trouble("Left as it was.", "", EXIT.refused);
 }
 
 /** A line typed at the terminal; null where the person ended it instead (Ctrl-C, Ctrl-D). */

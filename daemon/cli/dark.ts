@@ -26,7 +26,7 @@ async function dark(options: DaemonOptions): Promise<void> {
   const benches = await Promise.all(meant.map(darken));
   if (options.json === true) printJson(Darkened, { benches });
   else if (benches.length === 0) for (const line of nobodyWords(options.on, running)) print(line);
-  else for (const told of benches) print(`${told.bench}: ${told.words}`);
+  else for (const { words } of benches) print(words);
   process.exitCode =
     benches.length === 0 ? EXIT.absent : benches.every((t) => t.ok) ? EXIT.done : EXIT.refused;
 }
@@ -82,13 +82,13 @@ function endDaemon(notice: Notice): Darkened {
     return {
       ...base,
       ok: true,
-      words: `the daemon answered on neither way, so it was ended (process ${notice.pid}). Without permits the board is dark within the term and the fall of its stage. Go and look.`,
+      words: `The daemon of ${notice.bench} answered on neither way, so it was ended (process ${notice.pid}). Without permits the board is dark within the term and the fall of its stage. Go and look.`,
     };
   } catch (error) {
     return {
       ...base,
       ok: false,
-      words: `the daemon answers on neither way and could not be ended: ${reasonOf(error)}. Turn the key or open the interlock.`,
+      words: `The daemon of ${notice.bench} answers on neither way and could not be ended: ${reasonOf(error)}. Turn the key or open the interlock.`,
     };
   }
 }

@@ -1,6 +1,6 @@
 import { Failed } from "./answers.ts";
 import { makeProgram } from "./program.ts";
-import { codeOf, EXIT, jsonLine, reasonOf, Trouble } from "./say.ts";
+import { codeOf, EXIT, jsonLine, reasonOf, Trouble, terminalColumns, wrapped } from "./say.ts";
 
 // Whoever read our output has gone (`| head`): there is nobody left to tell, and that is no error.
 process.stdout.on("error", (error) => {
@@ -16,7 +16,9 @@ try {
 /** Prints what went wrong and what to do; returns the exit code. */
 function report(error: unknown): number {
   if (error instanceof Trouble) {
-    process.stderr.write(`${error.message}\n${error.remedy}\n`);
+    for (const line of [error.message, error.remedy]) {
+      if (line !== "") process.stderr.write(`${wrapped(line, terminalColumns(), "")}\n`);
+    }
     if (process.argv.includes("--json")) {
       const { message: words, remedy, exit } = error;
       const failed = { ok: false, reason: "trouble", words, do: remedy, exit } as const;

@@ -14,7 +14,7 @@ import { loadBench } from "./bench-text.ts";
 import { DeskProcess } from "./desk-process.ts";
 import { BY_PERSON, Ending, HOST_DEFECT } from "./ending.ts";
 import { type Recording, startRecorder } from "./recording.ts";
-import { codeOf, Trouble } from "./say.ts";
+import { codeOf, resetWords, Trouble } from "./say.ts";
 import { Telling } from "./telling.ts";
 import { transportFor } from "./transports.ts";
 import { beganAt, dataFolder, freeSocket, removeNotice, writeNotice } from "./where.ts";
@@ -71,10 +71,9 @@ export async function runBench(options: RunOptions): Promise<void> {
   end.onDefect(() => supervision.emergency(HOST_DEFECT));
   try {
     parts.desk = await startDesk(parts, supervision, host, options.port);
-    announce(parts, parts.desk, supervision, hints);
-    if (bench.controller.transport.kind === "built-in" && !options.stayDark) {
-      await bringPerson(socket);
-    }
+    const scripted = bench.controller.transport.kind === "built-in" && !options.stayDark;
+    announce(parts, parts.desk, supervision, firstWords(supervision, hints, scripted));
+    if (scripted) await bringPerson(socket);
     supervision.leave(await end.wait(options.for_ms));
     await until(DARK_ms_MAX, () => !isLit(supervision));
     telling.ended(lastWords(bench, supervision));
@@ -166,7 +165,7 @@ function announce(
   { bench, socket, folder, telling }: Parts,
   desk: DeskProcess,
   supervision: Supervision,
-  hints: number,
+  more: readonly string[],
 ): void {
   const { darkPort } = supervision;
   const { pid } = process;
@@ -180,7 +179,18 @@ function announce(
     folder,
   });
   const page = desk.sign() ?? desk.address();
-  telling.started({ kind: "started", bench: bench.name, pid, page, darkPort, folder }, hints);
+  telling.started({ kind: "started", bench: bench.name, pid, page, darkPort, folder }, more);
+}
+
+/** What a person should know at the start: hints of the file, what is latched, how light comes. */
+function firstWords(supervision: Supervision, hints: number, scripted: boolean): string[] {
+  const snapshot = supervision.snapshot();
+  const words = hints === 0 ? [] : [`beamsitter check tells ${hints} hints on the bench file.`];
+  const { cause } = snapshot;
+  if (cause !== null) return [...words, snapshot.sentence, resetWords(snapshot.bench, cause.id)];
+  return scripted
+    ? words
+    : [...words, "It is dark until somebody arms it, on the page or with beamsitter arm."];
 }
 
 function lastWords({ name }: Bench, supervision: Supervision): string {

@@ -24,10 +24,34 @@ export class Trouble extends Error {
   }
 }
 
-/** One line to a person. */
+/** One line to a person, broken between words where a terminal is narrower. */
 export const print = (line: string): void => {
-  process.stdout.write(`${line}\n`);
+  process.stdout.write(`${wrapped(line, terminalColumns(), "")}\n`);
 };
+
+/** Narrower terminals than this break lines as they like. */
+const COLUMNS_MIN = 40;
+
+/** Width of the terminal; Infinity where output goes elsewhere. */
+export function terminalColumns(): number {
+  const { isTTY, columns } = process.stdout;
+  return isTTY && columns >= COLUMNS_MIN ? columns : Number.POSITIVE_INFINITY;
+}
+
+/** Breaks a line between words; what follows a break begins with `indent`. */
+export function wrapped(line: string, columns: number, indent: string): string {
+  if (line.length <= columns) return line;
+  const lines: string[] = [];
+  let rest = line;
+  while (rest.length > columns) {
+    const at = rest.lastIndexOf(" ", columns);
+    // A word longer than the terminal, such as an address, stays whole.
+    if (at <= indent.length) break;
+    lines.push(rest.slice(0, at));
+    rest = `${indent}${rest.slice(at + 1)}`;
+  }
+  return [...lines, rest].join("\n");
+}
 
 /** One JSON document on stdout, through the schema that describes it. */
 export const printJson = <S extends z.ZodType>(schema: S, value: z.input<S>): void => {
@@ -52,3 +76,7 @@ export const codeOf = (error: unknown): string => {
   const code = (error as { code?: unknown } | null)?.code;
   return typeof code === "string" ? code : "";
 };
+
+/** How a latched bench comes back, for a person at a terminal. */
+export const resetWords = (bench: string, cause: string): string =>
+  `When the cause is found and mended: beamsitter reset ${cause} --on ${bench}`;

@@ -3,7 +3,7 @@ import type { Snapshot } from "../control/api.ts";
 import { Status } from "./answers.ts";
 import { ask } from "./ask.ts";
 import { type DaemonOptions, daemonCommandOf } from "./command.ts";
-import { EXIT, print, printJson, Trouble } from "./say.ts";
+import { EXIT, print, printJson, resetWords, Trouble } from "./say.ts";
 
 /** `status`: where the bench stands, in sentences. */
 export const statusCommand = (): Command =>
@@ -21,9 +21,7 @@ export const statusCommand = (): Command =>
 function statusLines(s: Snapshot): string[] {
   const lines = [s.sentence];
   if (s.next !== "") lines.push(s.next);
-  if (s.cause !== null) {
-    lines.push(`When the cause is found: beamsitter reset ${s.cause.id} --on ${s.bench}`);
-  }
+  if (s.cause !== null) lines.push(resetWords(s.bench, s.cause.id));
   for (const w of s.warnings) lines.push(`Warning: ${w.words}`);
   if (s.link.words !== "") lines.push(`Link: ${s.link.words}`);
   if (s.recorder.words !== "") lines.push(`Record: ${s.recorder.words}`);

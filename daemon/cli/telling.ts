@@ -1,7 +1,7 @@
 import type { EventLine } from "../control/api.ts";
 import { Running } from "./answers.ts";
 import { jsonLine } from "./say.ts";
-import { clock, eventText, Terminal } from "./terminal.ts";
+import { clock, EVENT_INDENT, eventText, Terminal } from "./terminal.ts";
 
 /** What a running daemon shows at its terminal: where its page is, then a line for each event. */
 export class Telling {
@@ -14,16 +14,17 @@ export class Telling {
     this.#json = json;
   }
 
-  started(start: Running & { kind: "started" }, hints: number): void {
+  /**
+   * Where the daemon is to be found, then the events that came before.
+   * @param more sentences for the person at the terminal
+   */
+  started(start: Running & { kind: "started" }, more: readonly string[]): void {
     if (this.#json) this.#terminal.line(jsonLine(Running, start));
     else {
       const { bench, page, folder } = start;
-      this.#terminal.line(`beamsitter watches ${bench}; its page: ${page}`);
-      this.#terminal.line(
-        `The record is kept in ${folder}. Ctrl-C ends it and leaves the bench dark.`,
-      );
-      if (hints > 0) {
-        this.#terminal.line(`The bench file can be bettered, ${hints} hints: beamsitter check.`);
+      const kept = `The record is kept in ${folder}. Ctrl-C ends it and leaves the bench dark.`;
+      for (const line of [`beamsitter watches ${bench}; its page: ${page}`, kept, ...more]) {
+        this.#terminal.line(line);
       }
     }
     const early = this.#early ?? [];
@@ -34,12 +35,12 @@ export class Telling {
   event(event: EventLine): void {
     if (this.#early !== null) this.#early.push(event);
     else if (this.#json) this.#terminal.line(jsonLine(Running, { kind: "event", event }));
-    else this.#terminal.line(eventText(event));
+    else this.#terminal.line(eventText(event), EVENT_INDENT);
   }
 
   /** Words for the person at the terminal that are no event of the bench. */
   note(words: string): void {
-    if (!this.#json) this.#terminal.line(`${clock(Date.now())}        ${words}`);
+    if (!this.#json) this.#terminal.line(`${clock(Date.now())}        ${words}`, EVENT_INDENT);
   }
 
   ended(words: string): void {

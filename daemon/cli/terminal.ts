@@ -1,6 +1,6 @@
 import { closeSync, constants, openSync, write } from "node:fs";
 import type { EventLine } from "../control/api.ts";
-import { codeOf } from "./say.ts";
+import { codeOf, terminalColumns, wrapped } from "./say.ts";
 
 /** Lines kept while nobody takes them: a stopped terminal may be let go again. */
 const WAITING_LINES_MAX = 500;
@@ -25,11 +25,14 @@ export class Terminal {
     this.#handle = ownHandle();
   }
 
-  /** Shows one line, now or a little later; never waits, never throws. */
-  line(text: string): void {
+  /**
+   * Shows one line, now or a little later; never waits, never throws.
+   * @param indent with what a line begins that was broken for a narrow terminal
+   */
+  line(text: string, indent = ""): void {
     if (this.#gone) return;
     if (this.#waiting.length >= WAITING_LINES_MAX) this.#leftOut++;
-    else this.#waiting.push(`${text}\n`);
+    else this.#waiting.push(`${wrapped(text, terminalColumns(), indent)}\n`);
     this.#next();
   }
 
@@ -80,6 +83,9 @@ function ownHandle(): number {
     return 1;
   }
 }
+
+/** Where the words of an event begin. */
+export const EVENT_INDENT = " ".repeat(16);
 
 /** One event as one line: local time, what it weighs where it is not calm, and the words. */
 export function eventText({ at, weight, words }: EventLine): string {

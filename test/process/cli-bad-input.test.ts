@@ -1,4 +1,4 @@
-import { type ChildProcess, spawn } from "node:child_process";
+import { spawn, spawnSync } from "node:child_process";
 import { once } from "node:events";
 import { mkdirSync, readdirSync, readFileSync, truncateSync, writeFileSync } from "node:fs";
 import { createServer, type Server } from "node:net";
@@ -269,27 +269,49 @@ describe.skipIf(disk === null)("a full disk at start (needs the right to mount)"
 });
 
 describe("a terminal that nobody reads", () => {
-  test("a reader that stands still, and one that goes away, do not touch the bench", async () => {
-    const child: ChildProcess = spawn(
-      "sh",
-      ["-c", `"${process.execPath}" "${CLI}" run --port 0 --json --stay-dark | sleep 1000`],
-      { env: place.env, detached: true, stdio: "ignore" },
-    );
-    ends.push(() => {
-      if (child.pid !== undefined) process.kill(-child.pid, "SIGKILL");
-    });
-    const socket = join(place.env.XDG_RUNTIME_DIR ?? "", "beamsitter", "north.socket");
-    const client = await vi.waitFor(() => SwitchClient.connect(socket), {
-      timeout: SAY_MS,
-      interval: 50,
-    });
-    // More events than a pipe holds: each refusal is one.
+  async function clientOf(bench: string): Promise<SwitchClient> {
+    const socket = join(place.env.XDG_RUNTIME_DIR ?? "", "beamsitter", `${bench}.socket`);
+    const wait = { timeout: SAY_MS, interval: 50 };
+    const client = await vi.waitFor(() => SwitchClient.connect(socket), wait);
+    ends.push(() => client.close());
+    return client;
+  }
+
+  /** More events than a pipe holds: each refusal is one. */
+  async function manyEvents(client: SwitchClient): Promise<void> {
     for (let i = 0; i < 1500; i++) {
       const told = await client.ask({ verb: "set", current_mA: 100, asker: "person" });
       expect(told.ok).toBe(false);
     }
+  }
+
+  test("a reader that stands still, and then goes away, does not touch the bench", async () => {
+    const run = `"${process.execPath}" "${CLI}" run --port 0 --json --stay-dark`;
+    const shell = spawn("sh", ["-c", `${run} | sleep 1000`], {
+      env: place.env,
+      detached: true,
+      stdio: "ignore",
+    });
+    ends.push(() => shell.pid !== undefined && process.kill(-shell.pid, "SIGKILL"));
+    const client = await clientOf("north");
+    await manyEvents(client);
+    const { stdout } = spawnSync("pgrep", ["-P", String(shell.pid), "sleep"], { encoding: "utf8" });
+    process.kill(Number(stdout), "SIGKILL");
+    await manyEvents(client);
     const { snapshot } = await client.ask({ verb: "status" });
     expect(snapshot?.state).not.toBe("tripped");
-    client.close();
+  });
+
+  test("nor does it hold up the end of the daemon", async () => {
+    // Over a socket, as under a service manager; nobody reads it.
+    const daemon = spawn(process.execPath, [CLI, "run", "--port", "0", "--json", "--stay-dark"], {
+      env: place.env,
+      stdio: ["ignore", "pipe", "ignore"],
+    });
+    ends.push(() => daemon.kill("SIGKILL"));
+    await manyEvents(await clientOf("north"));
+    daemon.kill("SIGTERM");
+    const [code] = await once(daemon, "exit");
+    expect(code).toBe(0);
   });
 });

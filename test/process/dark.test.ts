@@ -1,3 +1,5 @@
+import { spawn } from "node:child_process";
+import { once } from "node:events";
 import { rmSync, writeFileSync } from "node:fs";
 import { join } from "node:path";
 import { afterEach, beforeEach, describe, expect, test } from "vitest";
@@ -94,12 +96,15 @@ describe("beamsitter dark", () => {
   test("a notice left by a killed daemon never ends the process that has its number now", async () => {
     const running = await armed();
     await running.signal("SIGKILL");
-    const bystander = process.pid;
-    const notice = { ...running.notice, pid: bystander };
+    const bystander = spawn("sleep", ["600"]);
+    const notice = { ...running.notice, pid: bystander.pid };
     writeFileSync(join(runFolder(), "north.json"), JSON.stringify(notice));
     const { code, told } = await dark();
     expect(code).toBe(3);
     expect(told.benches).toEqual([]);
+    expect(bystander.kill("SIGTERM")).toBe(true);
+    await once(bystander, "exit");
+    expect(bystander.signalCode).toBe("SIGTERM");
     // A bench with such a notice can be run again.
     daemon = await Daemon.start(place, "north", "--stay-dark");
     expect((await daemon.snapshot()).bench).toBe("north");
