@@ -79,7 +79,18 @@ function factsOf(bench: Bench): Facts {
     const key = name.replace(/[A-Z]/g, (letter) => `-${letter.toLowerCase()}`);
     facts.set(`protections.${key}`, has ? "yes" : "no");
   }
+  addRecord(facts, bench);
   return facts;
+}
+
+function addRecord(facts: Facts, { record }: Bench): void {
+  const { influx } = record;
+  if (influx === null) return;
+  facts.set("record.influx.url", influx.url);
+  facts.set("record.influx.database", influx.database);
+  facts.set("record.influx.server", influx.server);
+  const { keep_ms } = influx;
+  facts.set("record.influx.keep", keep_ms === null ? "none" : exact("time", keep_ms));
 }
 
 function addController(facts: Facts, { controller }: Bench): void {

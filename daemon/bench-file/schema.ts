@@ -1,5 +1,14 @@
 import { z } from "zod";
-import { line, oneOf, plainNumber, quantity, section, wholeNumber, yesNo } from "./fields.ts";
+import {
+  line,
+  oneOf,
+  plainNumber,
+  quantity,
+  quantityOrNone,
+  section,
+  wholeNumber,
+  yesNo,
+} from "./fields.ts";
 import { conversionSchema } from "./schema-channels.ts";
 import { hazardsSchema } from "./schema-hazards.ts";
 
@@ -86,6 +95,29 @@ const protectionsSchema = section("a map of yes and no", {
   "toggled-enable": yesNo("the output stage needs a toggled enable line", false),
 });
 
+const HOUR_ms = 3_600_000;
+const CENTURY_ms = 100 * 365 * 24 * HOUR_ms;
+
+const influxSchema = section("a map that says which server keeps the record a second time", {
+  url: line(
+    "an address such as http://127.0.0.1:8086, without user and password",
+    /^https?:\/\/[^\s@/?#]{1,200}(\/[^\s@?#]{0,200})?$/,
+  ),
+  database: line(
+    "a name: a-z, A-Z, 0-9, _ and -, beginning with a letter",
+    /^[A-Za-z][A-Za-z0-9_-]{0,62}$/,
+    "beamsitter",
+  ),
+  server: oneOf("what answers there", ["influxdb", "victoria-metrics"], "influxdb"),
+  keep: quantityOrNone("time", { min: HOUR_ms, max: CENTURY_ms }, null),
+  "ca-file": line("the path of a PEM file", /^\S{1,200}$/, ""),
+  "credentials-file": line("the path of a file of mode 0600", /^\S{1,200}$/, ""),
+});
+
+const recordSchema = section("a map that says how the record is kept", {
+  influx: influxSchema.optional(),
+});
+
 export const fileSchema = section("a map of keys, beginning with bench", {
   bench: line("a short name: a-z, 0-9 and -, beginning with a letter", /^[a-z][a-z0-9-]{0,30}$/),
   title: line("one line of text, at most 120 characters", /^[^\r\n]{1,120}$/, ""),
@@ -99,5 +131,6 @@ export const fileSchema = section("a map of keys, beginning with bench", {
   channels: z.record(z.string(), conversionSchema, { error: () => "a map of channels" }).optional(),
   hazards: hazardsSchema.optional(),
   protections: protectionsSchema.optional(),
+  record: recordSchema.optional(),
 });
 export type BenchFile = z.output<typeof fileSchema>;

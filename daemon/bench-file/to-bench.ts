@@ -3,6 +3,7 @@ import type {
   ControllerPart,
   DiodePart,
   ProtectionsPart,
+  RecordPart,
   TransportSpec,
 } from "../model/bench.ts";
 import type { Conversion, Divider, Law } from "../model/conversion.ts";
@@ -38,6 +39,7 @@ export function toBench(file: BenchFile): { bench: Bench; findings: Finding[] } 
       darkTime_ms: file.limits["dark-time"],
     }),
     protections: protectionsOf(file),
+    record: recordOf(file),
   };
   return { bench, findings };
 }
@@ -118,6 +120,22 @@ function protectionsOf({ protections }: BenchFile): ProtectionsPart {
     beamStop: protections?.["beam-stop"] ?? false,
     manualReset: protections?.["manual-reset"] ?? false,
     toggledEnable: protections?.["toggled-enable"] ?? false,
+  };
+}
+
+function recordOf({ record }: BenchFile): RecordPart {
+  const influx = record?.influx;
+  if (influx === undefined) return { influx: null };
+  const fileOr = (path: string): string | null => (path === "" ? null : path);
+  return {
+    influx: {
+      url: influx.url,
+      database: influx.database,
+      server: influx.server,
+      keep_ms: influx.keep,
+      caFile: fileOr(influx["ca-file"]),
+      credentialsFile: fileOr(influx["credentials-file"]),
+    },
   };
 }
 

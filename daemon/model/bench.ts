@@ -21,6 +21,7 @@ export interface Bench {
   readonly conversions: Readonly<Record<string, Conversion>>;
   readonly hazards: Readonly<Record<HazardId, HazardLevels>>;
   readonly protections: ProtectionsPart;
+  readonly record: RecordPart;
 }
 
 export type TransportSpec =
@@ -138,4 +139,23 @@ export interface ProtectionsPart {
   readonly beamStop: boolean;
   readonly manualReset: boolean;
   readonly toggledEnable: boolean;
+}
+
+/** How the record is kept, beside what every record does. */
+export interface RecordPart {
+  /** A server that keeps the record a second time; null where there is none. */
+  readonly influx: InfluxPart | null;
+}
+
+/** User and password never stand here: they come from the environment or a file of mode 0600. */
+export interface InfluxPart {
+  readonly url: string;
+  readonly database: string;
+  readonly server: "influxdb" | "victoria-metrics";
+  /** How long the server is asked to keep what it gets; null for ever. */
+  readonly keep_ms: number | null;
+  /** PEM file of the authority that signed the server's certificate; null for the system's own. */
+  readonly caFile: string | null;
+  /** File with user and password; null for the one in the data folder. */
+  readonly credentialsFile: string | null;
 }

@@ -69,6 +69,7 @@ export const BENCH: Bench = {
     manualReset: true,
     toggledEnable: true,
   },
+  record: { influx: null },
 };
 
 const channel = (
