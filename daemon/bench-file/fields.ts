@@ -140,8 +140,13 @@ export function yesNo(what: string, fallback?: boolean) {
   }, wanted);
 }
 
-/** One of a few words. */
-export function oneOf<const W extends string>(what: string, words: readonly W[], fallback?: W) {
+/** One of a few words. `code` names the refusal of any other. */
+export function oneOf<const W extends string>(
+  what: string,
+  words: readonly W[],
+  fallback?: W,
+  code = "word",
+) {
   const wanted = `${what}: ${words.join(", ")}`;
   return field<W>((found) => {
     if (found === undefined) {
@@ -151,7 +156,7 @@ export function oneOf<const W extends string>(what: string, words: readonly W[],
     if (word !== undefined) return { value: word };
     const near = nearest(found, words);
     const advice = near === null ? "write one of these words" : `did you mean ${near}?`;
-    return refusal("word", found === "" ? "nothing" : found, wanted, advice);
+    return refusal(code, found === "" ? "nothing" : found, wanted, advice);
   }, wanted);
 }
 

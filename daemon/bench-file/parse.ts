@@ -1,5 +1,6 @@
 import type { z } from "zod";
 import type { Bench } from "../model/bench.ts";
+import type { Measured } from "./lints/link.ts";
 import { lintBench } from "./lints.ts";
 import { nearest } from "./near.ts";
 import { type Finding, type Path, type Problem, pathWords } from "./problem.ts";
@@ -15,12 +16,14 @@ export type Parsed =
   | { readonly ok: true; readonly bench: Bench; readonly problems: readonly Problem[] }
   | { readonly ok: false; readonly problems: readonly Problem[] };
 
+const UNMEASURED: Measured = { permitAge_ms: null };
+
 /**
  * The bench a file describes, or everything wrong with it at once, each with its line and column.
  * Never throws, whatever the text. The caller reads the file; one over BENCH_BYTES_MAX is refused
  * here too, but is better not read at all.
  */
-export function parseBench(text: string): Parsed {
+export function parseBench(text: string, measured: Measured = UNMEASURED): Parsed {
   const plain = text.startsWith("\ufeff") ? text.slice(1) : text;
   const refused = refuseText(plain);
   if (refused !== null) return { ok: false, problems: [refused] };
@@ -33,7 +36,7 @@ export function parseBench(text: string): Parsed {
     return { ok: false, problems: inOrder(findings.map((finding) => place(plain, read, finding))) };
   }
   const { bench, findings } = toBench(result.data);
-  const all = findings.length > 0 ? findings : lintBench(bench);
+  const all = findings.length > 0 ? findings : lintBench(bench, measured);
   const problems = inOrder(all.map((finding) => place(plain, read, finding)));
   if (problems.some((problem) => problem.level === "error")) return { ok: false, problems };
   return { ok: true, bench: deepFreeze(bench), problems };

@@ -121,7 +121,12 @@ const recordSchema = section("a map that says how the record is kept", {
 export const fileSchema = section("a map of keys, beginning with bench", {
   bench: line("a short name: a-z, 0-9 and -, beginning with a letter", /^[a-z][a-z0-9-]{0,30}$/),
   title: line("one line of text, at most 120 characters", /^[^\r\n]{1,120}$/, ""),
-  light: oneOf("how the light is made", ["continuous"], "continuous"),
+  light: oneOf(
+    "how the light is made; limits on a mean current do not see a peak",
+    ["continuous"],
+    "continuous",
+    "light",
+  ),
   controller: controllerSchema,
   diode: diodeSchema,
   crystal: crystalSchema.optional(),

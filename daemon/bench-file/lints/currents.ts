@@ -1,13 +1,15 @@
 import type { Bench, DeratingPoint } from "../../model/bench.ts";
 import { formatQuantity } from "../../model/quantities.ts";
 import { crystalFloor_mA } from "../../physics/crystal.ts";
-import { junctionLimited_mA, slope_mWpermA, threshold_mA } from "../../physics/diode.ts";
-import { loopGain } from "../../physics/thermal.ts";
+import { heat_mW, junctionLimited_mA, slope_mWpermA, threshold_mA } from "../../physics/diode.ts";
+import { loopGain, settle } from "../../physics/thermal.ts";
 import type { Finding } from "../problem.ts";
 import { error, warning } from "./finding.ts";
 
 /** A hardware clamp sits this far above the largest current in use. */
 const CLAMP = 1.1;
+/** A room as people work in it, for asking where the case would settle. */
+const ROOM_degC = 25;
 
 const mA = (value: number): string => formatQuantity("current", value);
 const degC = (value: number): string => formatQuantity("temperature", value);
@@ -15,8 +17,56 @@ const degC = (value: number): string => formatQuantity("temperature", value);
 export function lintCurrents(bench: Bench): Finding[] {
   const order = lintOrder(bench.derating);
   // A derating out of order has no meaning, so nothing more is said about it.
-  const rest = order.length > 0 ? [] : [...lintThreshold(bench), ...lintJunction(bench)];
+  const rest =
+    order.length > 0
+      ? []
+      : [...lintThreshold(bench), ...lintJunction(bench), ...lintReach(bench), ...lintCool(bench)];
   return [...lintAbsolute(bench), ...order, ...rest, ...lintLoop(bench)];
+}
+
+/** A limit above the derating limits nothing; a derating that ends early trips before its row. */
+function lintReach({ derating, limits, hazards, diode }: Bench): Finding[] {
+  const findings: Finding[] = [];
+  const most_mA = derating[0]?.current_mA ?? 0;
+  const isAllowed = limits.current_mA <= diode.absolute_mA;
+  if (isAllowed && limits.current_mA > most_mA && most_mA > 0) {
+    findings.push(
+      warning("limit-idle", ["limits", "current"], {
+        found: `${mA(limits.current_mA)}, and a derating that allows ${mA(most_mA)} at most`,
+        wanted: "a limit that the bench can reach",
+        do: `write ${mA(most_mA)} or less, or a higher derating`,
+      }),
+    );
+  }
+  const last = derating[derating.length - 1];
+  const { trip } = hazards["case-over"];
+  if (last !== undefined && trip !== null && last.case_degC < trip) {
+    findings.push(
+      warning("derating-ends-early", ["derating", derating.length - 1, "case"], {
+        found: `${degC(last.case_degC)}, beyond which no current is allowed`,
+        wanted: `a last point at ${degC(trip)}, where hazards.case-over trips`,
+        do: "add a point there, or write a lower trip of hazards.case-over",
+      }),
+    );
+  }
+  return findings;
+}
+
+/** A case that settles at its trip level in an ordinary room cannot hold the limit. */
+function lintCool({ cooling, diode, limits, hazards }: Bench): Finding[] {
+  const { trip } = hazards["case-over"];
+  if (cooling === null || trip === null) return [];
+  const heat_W = heat_mW(diode, limits.current_mA, ROOM_degC) / 1000;
+  const at = { case_degC: Number.NaN, sink_degC: Number.NaN };
+  settle(cooling, heat_W, ROOM_degC, at);
+  if (!(at.case_degC >= trip)) return [];
+  return [
+    warning("cooling-weak", ["cooling", "sink-to-room"], {
+      found: `a case that settles at ${degC(at.case_degC)} with ${mA(limits.current_mA)} in a room of ${degC(ROOM_degC)}`,
+      wanted: `a case below ${degC(trip)}, where hazards.case-over trips`,
+      do: "cool better, or write a lower limits.current",
+    }),
+  ];
 }
 
 function lintAbsolute({ limits, diode, derating }: Bench): Finding[] {

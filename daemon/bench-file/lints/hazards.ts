@@ -88,13 +88,24 @@ function lintSafetyTime(bench: Bench, id: HazardId): Finding[] {
   ];
 }
 
-/** A row that trips by default and does not in this file. */
+/** A row that trips or warns by default and does not in this file. */
 function lintOff(bench: Bench, id: HazardId): Finding[] {
-  if (HAZARD_ROWS[id].defaults.trip === null || bench.hazards[id].trip !== null) return [];
+  const { defaults, measures } = HAZARD_ROWS[id];
+  const { warn, trip } = bench.hazards[id];
+  if (defaults.warn !== null && warn === null && trip !== null) {
+    return [
+      warning("warn-off", ["hazards", id, "warn"], {
+        found: "a trip without a warning",
+        wanted: `a warning before ${measures} goes too far`,
+        do: "take the line out to have the default back, unless you mean it",
+      }),
+    ];
+  }
+  if (defaults.trip === null || trip !== null) return [];
   return [
     warning("row-off", ["hazards", id, "trip"], {
       found: "no trip",
-      wanted: `a trip when ${HAZARD_ROWS[id].measures} goes too far`,
+      wanted: `a trip when ${measures} goes too far`,
       do: "take the line out to have the default back, unless you mean it",
     }),
   ];

@@ -17,8 +17,45 @@ export const DOWN_SHARE_MAX = 0.3;
 /** A term outlives four lost permits. */
 const PERIODS_PER_TERM = 5;
 
-export function lintLink(bench: Bench): Finding[] {
-  return [...lintTerm(bench), ...lintWire(bench)];
+/** What was measured on this very bench, where anything was. */
+export interface Measured {
+  /** The worst age of a permit on its arrival at the board, ms; null where nobody measured it. */
+  readonly permitAge_ms: number | null;
+}
+
+export function lintLink(bench: Bench, measured: Measured): Finding[] {
+  const term = lintTerm(bench);
+  const age = term.length > 0 ? [] : lintAge(bench, measured);
+  return [...term, ...age, ...lintWire(bench), ...lintSlew(bench)];
+}
+
+function lintAge({ controller }: Bench, { permitAge_ms }: Measured): Finding[] {
+  if (permitAge_ms === null) return [];
+  const { term_ms, rate_perS } = controller;
+  const wanted_ms = PERIODS_PER_TERM * permitPeriod_ms(rate_perS) + permitAge_ms;
+  if (term_ms >= wanted_ms) return [];
+  return [
+    warning("term-age", ["controller", "term"], {
+      found: `${formatQuantity("time", term_ms)}, and permits that arrived ${formatQuantity("time", permitAge_ms)} old`,
+      wanted: `${formatQuantity("time", Math.ceil(wanted_ms))} or more: five permits and the worst age measured`,
+      do: "write a longer term, or find out what delays the line",
+    }),
+  ];
+}
+
+/** The judge shall see a rise while it goes on. */
+function lintSlew({ controller, limits }: Bench): Finding[] {
+  const period_ms = permitPeriod_ms(controller.rate_perS);
+  const rise_mA = (limits.slewUp_mAperS * period_ms) / 1000;
+  if (rise_mA < limits.current_mA) return [];
+  const most = Math.floor((limits.current_mA * 1000) / period_ms);
+  return [
+    warning("slew-fast", ["limits", "slew-up"], {
+      found: `a rise of ${formatQuantity("current", rise_mA)} from one permit to the next`,
+      wanted: `less than the limit of ${formatQuantity("current", limits.current_mA)}`,
+      do: `write less than ${formatQuantity("slew", most)}; a tenth of it is calm`,
+    }),
+  ];
 }
 
 /** Time between permits: the first sample that is late enough. */

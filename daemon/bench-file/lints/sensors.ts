@@ -31,7 +31,9 @@ export function lintSensors(bench: Bench): Finding[] {
     const nonsense = lintConstants(law, path);
     findings.push(...nonsense);
     if (nonsense.length === 0) findings.push(...lintHeating(conversion, name));
-    if (name === "case" && nonsense.length === 0) findings.push(...lintSpan(bench, law, path));
+    if (name === "case" && nonsense.length === 0) {
+      findings.push(...lintSpan(bench, law, path), ...lintColdSpan(bench, law, path));
+    }
   }
   return [...findings, ...lintUnseen(bench)];
 }
@@ -92,7 +94,25 @@ function lintSpan(bench: Bench, law: Resistive, path: readonly string[]): Findin
   ];
 }
 
-function countStep_K(law: Law, divider: Divider, at_degC: number): number {
+/** Whether the sensor can tell the coolest case from an open or shorted sensor. */
+function lintColdSpan(bench: Bench, law: Resistive, path: readonly string[]): Finding[] {
+  const cold = bench.derating[0]?.case_degC;
+  if (cold === undefined) return [];
+  const share = shareAt(law, cold);
+  const open = bench.hazards["case-open"].trip ?? 1;
+  const short = bench.hazards["case-short"].trip ?? 0;
+  if (share > short && share < open) return [];
+  return [
+    warning("sensor-span-cold", [...path, "fixed"], {
+      found: `${formatQuantity("ratio", share, 0.001)} of the divider on the sensor at ${degC(cold)}`,
+      wanted: `a share between ${formatQuantity("ratio", short, 0.001)} (read as shorted) and ${formatQuantity("ratio", open, 0.001)} (read as open)`,
+      do: `choose a fixed resistor nearer to the sensor's resistance at ${degC(cold)}`,
+    }),
+  ];
+}
+
+/** How much one count stands for at a value, in the channel's unit. */
+export function countStep_K(law: Law, divider: Divider, at_degC: number): number {
   const count = lawToCount(law, at_degC);
   const one = direction(law);
   const next = Math.min(divider.full_counts, Math.max(0, count + one));

@@ -1,4 +1,5 @@
 import { describe, expect, test } from "vitest";
+import { LINTS } from "../../../daemon/bench-file/lints/catalogue.ts";
 import { parseBench } from "../../../daemon/bench-file/parse.ts";
 import { BARE_DIODE, changed, NORTH } from "./files.ts";
 
@@ -234,8 +235,178 @@ const CASES: readonly Case[] = [
     "full: 16384 counts, supply: 5 V, dissipation: 0.7 mW/K }",
     BARE_DIODE,
   ),
-  lint("warning", "protection", "protections.key", "key: yes", "key: no", "key: yes"),
+  ...[
+    "key",
+    "interlock-loop",
+    "emission-warning",
+    "beam-stop",
+    "manual-reset",
+    "toggled-enable",
+  ].map((key) =>
+    lint("warning", `no-${key}`, `protections.${key}`, `${key}: yes`, `${key}: no`, `${key}: true`),
+  ),
+  lint("error", "light", "light", "light: continuous", "light: pulsed", "light: continuous"),
+  lint(
+    "error",
+    "efficiency-impossible",
+    "diode.slope",
+    "voltage: 1.49 V",
+    "voltage: 0.4 V",
+    "voltage: 0.6 V",
+  ),
+  lint(
+    "warning",
+    "voltage-under-photon",
+    "diode.voltage",
+    "voltage: 1.49 V",
+    "voltage: 1.0 V",
+    "voltage: 1.2 V",
+  ),
+  lint(
+    "warning",
+    "t1-under-t0",
+    "diode.slope-t1",
+    "slope-t1: 350 K",
+    "slope-t1: 119 K",
+    "slope-t1: 120 K",
+  ),
+  lint("warning", "reference-far", "diode.at", "at: 25 °C", "at: -13 °C", "at: -12 °C"),
+  lint(
+    "error",
+    "crystal-upconverts",
+    "crystal.wavelength",
+    "wavelength: 1064 nm",
+    "wavelength: 532 nm",
+    "wavelength: 914 nm",
+  ),
+  lint(
+    "warning",
+    "pump-off-line",
+    "crystal.line",
+    "line: 808.5 nm",
+    "line: 825 nm",
+    "line: 809 nm",
+  ),
+  lint(
+    "warning",
+    "limit-idle",
+    "limits.current",
+    "case: 28 °C, current: 2.10 A",
+    "case: 28 °C, current: 1.80 A",
+    "case: 28 °C, current: 1.90 A",
+  ),
+  lint(
+    "warning",
+    "derating-ends-early",
+    "derating[2].case",
+    "{ case: 50 °C, current",
+    "{ case: 49 °C, current",
+    "{ case: 51 °C, current",
+  ),
+  lint(
+    "warning",
+    "cooling-weak",
+    "cooling.sink-to-room",
+    "sink-to-room: 4.5 K/W",
+    "sink-to-room: 20 K/W",
+    "sink-to-room: 8 K/W",
+  ),
+  lint(
+    "warning",
+    "slew-fast",
+    "limits.slew-up",
+    "slew-up: 200 mA/s",
+    "slew-up: 40 A/s",
+    "slew-up: 20 A/s",
+  ),
+  lint("warning", "warn-off", "hazards.case-over.warn", "warn: 42 °C", "warn: none", "warn: 43 °C"),
+  lint(
+    "warning",
+    "recover-small",
+    "limits.recover",
+    "recover: 1 K ",
+    "recover: 0.4 K ",
+    "recover: 0.5 K ",
+  ),
+  lint(
+    "warning",
+    "deadband-small",
+    "hazards.case-over.deadband",
+    "full: 16384 counts  #",
+    "full: 32 counts  #",
+    "full: 128 counts  #",
+  ),
+  lint(
+    "warning",
+    "error-large",
+    "channels.case.error",
+    "error: 0.5 K ",
+    "error: 9 K ",
+    "error: 8 K ",
+  ),
+  lint(
+    "warning",
+    "sensor-span-cold",
+    "channels.case.ntc.fixed",
+    "{ case: 25 °C, current: 1.8 A }",
+    "{ case: -60 °C, current: 1.8 A }",
+    "{ case: -10 °C, current: 1.8 A }",
+    BARE_DIODE,
+  ),
+  lint(
+    "warning",
+    "steps-coarse",
+    "channels.photodiode.linear.per-count",
+    "per-count: 0.1 mW",
+    "per-count: 80 mW",
+    "per-count: 40 mW",
+    BARE_DIODE,
+  ),
+  lint(
+    "warning",
+    "steps-coarse",
+    "channels.current.linear.per-count",
+    "channels:\n",
+    "channels:\n  current: { error: 5 mA, linear: { per-count: 8 mA } }\n",
+    "channels:\n  current: { error: 5 mA, linear: { per-count: 7 mA } }\n",
+    BARE_DIODE,
+  ),
+  lint(
+    "warning",
+    "output-error",
+    "channels.photodiode.error",
+    "error: 20 mW",
+    "error: 120 mW",
+    "error: 100 mW",
+    BARE_DIODE,
+  ),
 ];
+
+/** Lints that need more than a file: their pairs stand in a test of their own below. */
+const ELSEWHERE = ["term-age"];
+
+test("every lint has a file that makes it speak and one that does not", () => {
+  const paired = new Set([...CASES.map(({ code }) => code), ...ELSEWHERE]);
+  expect(Object.keys(LINTS).filter((code) => !paired.has(code))).toEqual([]);
+  expect(Object.keys(LINTS).length).toBeGreaterThanOrEqual(30);
+});
+
+test("every lint says what, why, what to do, and where it comes from", () => {
+  for (const [code, text] of Object.entries(LINTS)) {
+    for (const words of [text.what, text.why, text.do, text.source]) {
+      expect(words.length, code).toBeGreaterThan(10);
+      expect(words, code).not.toMatch(/[.!]$/);
+    }
+  }
+});
+
+test("term-age counts five permits and the worst age measured: 300 ms and 201 ms are over 500 ms", () => {
+  const codes = (permitAge_ms: number | null) =>
+    parseBench(NORTH, { permitAge_ms }).problems.map(({ code }) => code);
+  expect(codes(201)).toContain("term-age");
+  expect(codes(200)).not.toContain("term-age");
+  expect(codes(null)).not.toContain("term-age");
+});
 
 describe.each(CASES.map((one) => [`${one.code} at ${one.path}`, one] as const))("%s", (_n, one) => {
   const spoken = (change: readonly [string, string]) =>

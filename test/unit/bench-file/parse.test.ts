@@ -111,7 +111,7 @@ describe("an error stands at its place", () => {
   });
   test("words that are not in the list", () => {
     const text = changed(NORTH, "light: continuous", "light: pulsed");
-    expect(problemOf(text, "word")).toMatchObject({ path: "light", found: "pulsed" });
+    expect(problemOf(text, "light")).toMatchObject({ path: "light", found: "pulsed" });
     const other = changed(NORTH, "place: to-ground", "place: to-grund");
     expect(problemOf(other, "word")?.do).toBe("did you mean to-ground?");
   });
