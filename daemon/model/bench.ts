@@ -1,4 +1,5 @@
 import type { Conversion } from "./conversion.ts";
+import type { StreamSpec } from "./stream.ts";
 
 /**
  * A bench file, parsed: every value checked, in one unit, with defaults filled in. bench-file/ makes
@@ -36,6 +37,8 @@ export interface ControllerPart {
   /** Samples per second wanted; the manifest must offer at least this. */
   readonly rate_perS: number;
   readonly term_ms: number;
+  /** How its lines are read, where it has firmware of its own and is only watched. */
+  readonly stream?: StreamSpec;
 }
 
 export interface DiodePart {

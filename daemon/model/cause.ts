@@ -73,6 +73,8 @@ export const CAUSES: readonly Cause[] = [
     "host",
   ),
   cause(87, "host-defect", "the daemon found itself in an impossible state", "host"),
+  cause(88, "cut-at-open", "opening the port cuts it until a person lets it go", "host"),
+  cause(89, "cut-by-person", "a person cut it, and the cut-off holds until it is let go", "host"),
   cause(255, "unknown", "no cause was kept", "board"),
 ];
 

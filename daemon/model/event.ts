@@ -19,6 +19,9 @@ export const EVENT_KINDS = [
   "adopted",
   "record",
   "desk",
+  "light-seen",
+  "light-gone",
+  "unenforced",
 ] as const;
 export type EventKind = (typeof EVENT_KINDS)[number];
 
