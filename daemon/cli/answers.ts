@@ -15,7 +15,7 @@ export const Adopted = Told.extend({ adopted: z.boolean() });
 /** status: everything one look needs. */
 export { Snapshot as Status };
 
-/** check: every problem with its place, and what follows from a sound file. */
+/** check: every problem with its place. */
 export const Checked = z.strictObject({
   ok: z.boolean(),
   problems: z.array(
@@ -30,8 +30,10 @@ export const Checked = z.strictObject({
       do: z.string(),
     }),
   ),
-  consequences: z.array(z.string()),
 });
+
+/** check --explain: what a code or a row means, in sentences. */
+export const Explained = z.strictObject({ row: z.string(), lines: z.array(z.string()) });
 
 /** dark: which way each bench was reached. */
 export const Darkened = z.strictObject({
