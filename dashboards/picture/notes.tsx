@@ -85,7 +85,7 @@ function FloorName({ scene }: { scene: Scene }): VNode | null {
   );
   const place = y(Math.max(lowest, bounds.low)) + layout.small + 5;
   return place > layout.corridor + layout.small + 6 ? null : (
-    <text x={x} y={place}>
+    <text class="bs-on-solid" x={x + (x > layout.margin + 2 ? 6 : 0)} y={place}>
       {text}
     </text>
   );

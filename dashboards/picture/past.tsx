@@ -1,5 +1,4 @@
 import type { VNode } from "preact";
-import { amps } from "../words/format.ts";
 import { xAt } from "./columns.ts";
 import { widthOf } from "./labels.ts";
 import { Hatch, Mark } from "./marks.tsx";
@@ -122,9 +121,8 @@ export function Makers({ scene }: { scene: Scene }): VNode {
       {stretches.map(({ from, to, is }, k) => {
         const joined = stretches[k - 1]?.to === from;
         const name = MAKER_NAMES[is]?.[layout.phone ? 1 : 0] ?? "";
-        const flat = is !== 0 ? ` ${amps(columns.ceiling[from] ?? 0)}` : "";
-        const text = layout.phone ? name : `ceiling: ${name}${flat}`;
-        const start = Math.max(layout.margin - xOf(scene, from), joined ? 14 : 0);
+        const text = layout.phone ? name : `ceiling: ${name}`;
+        const start = Math.max(layout.margin - xOf(scene, from), joined ? 14 : 6);
         const fits =
           xOf(scene, to - 1) - xOf(scene, from) - start > widthOf(text, layout.small) + 6;
         const top = y(columns.ceiling[from] ?? 0);

@@ -34,6 +34,8 @@ export function sentencesOf(now: Snapshot, beside: Beside): Sentences {
 /** A snapshot may have left while dark was already asked; the confirmation is the newer word. */
 const CONFIRMED_ms = 1000;
 
+const WAYS = " Dark goes by two ways at once; go and look if neither answers.";
+
 function silentSentences(now: Snapshot, { silence_ms, dark_at }: Beside): Sentences {
   const abnormal = `Nothing heard from ${now.bench} for ${age(silence_ms)}.`;
   const lit = now.state === "armed" || now.state === "emitting";
@@ -50,7 +52,7 @@ function silentSentences(now: Snapshot, { silence_ms, dark_at }: Beside): Senten
   return {
     abnormal,
     state: `${abnormal} ${last}${whether}`,
-    next: "Next: this page asks again every 2\u00a0s. Dark goes by two ways at once; go and look if neither answers.",
+    next: `Next: this page asks again every 2\u00a0s.${confirmed ? "" : WAYS}`,
   };
 }
 
