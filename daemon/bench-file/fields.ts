@@ -1,6 +1,15 @@
 import { z } from "zod";
-import { formatQuantity, parseQuantity } from "../model/quantities.ts";
+import { parseQuantity } from "../model/quantities.ts";
 import { KINDS, type QuantityKind } from "../model/quantity-units.ts";
+import {
+  boundWords,
+  lineShape,
+  numberShape,
+  quantityShape,
+  sentence,
+  wordShape,
+  yesNoShape,
+} from "./field-shapes.ts";
 import { nearest } from "./near.ts";
 
 /**
@@ -64,15 +73,10 @@ export function quantity(kind: QuantityKind, bounds: Bounds, fallback?: number) 
     const parsed = parseQuantity(kind, found);
     if (!parsed.ok) return refusal("quantity", parsed.found, parsed.wanted, parsed.do);
     if (parsed.value >= bounds.min && parsed.value <= bounds.max) return { value: parsed.value };
-    const from = formatQuantity(kind, bounds.min, finest(bounds.min, spec.resolution));
-    const to = formatQuantity(kind, bounds.max, finest(bounds.max, spec.resolution));
-    return refusal("range", found.trim(), `${from} to ${to}`, "write a value in this range");
-  }, shape);
+    const range = `${boundWords(kind, bounds.min)} to ${boundWords(kind, bounds.max)}`;
+    return refusal("range", found.trim(), range, "write a value in this range");
+  }, shape).meta(quantityShape(kind, bounds, fallback));
 }
-
-/** A bound of 0.001 is not to be shown as 0.00. */
-const finest = (value: number, step: number): number =>
-  value !== 0 && Math.abs(value) < step ? Math.abs(value) : step;
 
 /** A quantity, or the word `none`, which reads as null. A missing key reads as the default. */
 export function quantityOrNone(kind: QuantityKind, bounds: Bounds, fallback: number | null) {
@@ -84,7 +88,8 @@ export function quantityOrNone(kind: QuantityKind, bounds: Bounds, fallback: num
       if (found === undefined) return fallback;
       if (found === "none") return null;
       return runInner(inner, found, context);
-    });
+    })
+    .meta(quantityShape(kind, bounds, fallback ?? undefined, true));
 }
 
 /** Runs another field at the same place and passes its refusals on. */
@@ -114,18 +119,20 @@ export function plainNumber(what: string, bounds: Bounds, fallback?: number) {
       : Number.NaN;
     if (value >= bounds.min && value <= bounds.max) return { value };
     return refusal("number", plain === "" ? "nothing" : plain, wanted, "write the number alone");
-  }, wanted);
+  }, wanted).meta(numberShape(what, "number", bounds, fallback));
 }
 
 /** A whole number without a unit. */
 export const wholeNumber = (what: string, bounds: Bounds, fallback?: number) =>
-  plainNumber(what, bounds, fallback).transform((value, context) => {
-    if (Number.isInteger(value)) return value;
-    const advice = "write a whole number";
-    const params = { code: "number", found: String(value), wanted: `${what}, whole`, do: advice };
-    context.addIssue({ code: "custom", params, message: advice });
-    return z.NEVER;
-  });
+  plainNumber(what, bounds, fallback)
+    .transform((value, context) => {
+      if (Number.isInteger(value)) return value;
+      const advice = "write a whole number";
+      const params = { code: "number", found: String(value), wanted: `${what}, whole`, do: advice };
+      context.addIssue({ code: "custom", params, message: advice });
+      return z.NEVER;
+    })
+    .meta(numberShape(what, "integer", bounds, fallback));
 
 /** `yes` or `no`. */
 export function yesNo(what: string, fallback?: boolean) {
@@ -137,7 +144,7 @@ export function yesNo(what: string, fallback?: boolean) {
     if (found === "yes" || found === "true") return { value: true };
     if (found === "no" || found === "false") return { value: false };
     return refusal("word", found === "" ? "nothing" : found, wanted, "write yes or no");
-  }, wanted);
+  }, wanted).meta(yesNoShape(what, fallback));
 }
 
 /** One of a few words. `code` names the refusal of any other. */
@@ -157,7 +164,7 @@ export function oneOf<const W extends string>(
     const near = nearest(found, words);
     const advice = near === null ? "write one of these words" : `did you mean ${near}?`;
     return refusal(code, found === "" ? "nothing" : found, wanted, advice);
-  }, wanted);
+  }, wanted).meta(wordShape(what, words, fallback));
 }
 
 /** A line of text that fits a pattern. */
@@ -168,7 +175,7 @@ export function line(wanted: string, pattern: RegExp, fallback?: string) {
     }
     if (pattern.test(found)) return { value: found };
     return refusal("text", found === "" ? "nothing" : found.slice(0, 60), wanted, "rewrite it so");
-  }, wanted);
+  }, wanted).meta(lineShape(wanted, pattern, fallback));
 }
 
 /**
@@ -176,7 +183,9 @@ export function line(wanted: string, pattern: RegExp, fallback?: string) {
  * keys, parted by spaces, where there are unknown ones.
  */
 export function section<S extends z.core.$ZodLooseShape>(what: string, shape: S) {
-  return z.strictObject(shape, {
-    error: (issue) => (issue.code === "unrecognized_keys" ? Object.keys(shape).join(" ") : what),
-  });
+  return z
+    .strictObject(shape, {
+      error: (issue) => (issue.code === "unrecognized_keys" ? Object.keys(shape).join(" ") : what),
+    })
+    .describe(sentence(what));
 }

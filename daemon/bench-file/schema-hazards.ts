@@ -2,6 +2,7 @@ import { z } from "zod";
 import { HAZARD_IDS, type HazardId, type HazardLevels } from "../model/bench.ts";
 import { defaultLevels, HAZARD_ROWS, type HazardTimes } from "../model/hazard-rows.ts";
 import type { QuantityKind } from "../model/quantity-units.ts";
+import { wordShape } from "./field-shapes.ts";
 import { quantity, quantityOrNone, section } from "./fields.ts";
 
 /**
@@ -15,15 +16,23 @@ function rowSchema(id: HazardId) {
   const level = row.level === "fact" ? factOrNone() : levelOf(row.level);
   const deadband = row.level === "temperature" ? "difference" : row.level;
   return section(`the levels of ${id}`, {
-    warn: level,
-    "warn-after": quantity("time", DELAY, Number.NaN),
-    trip: level,
-    "trip-after": quantity("time", DELAY, Number.NaN),
+    warn: level.describe("Level at which the row warns."),
+    "warn-after": quantity("time", DELAY, Number.NaN).describe("How long it must stand first."),
+    trip: level.describe("Level at which the row ends light."),
+    "trip-after": quantity("time", DELAY, Number.NaN).describe("How long it must stand first."),
     ...(deadband === "fact"
       ? {}
-      : { deadband: quantity(deadband, { min: 0, max: 1e6 }, Number.NaN) }),
-    "safety-time": quantity("time", { min: 1, max: 3_600_000 }, Number.NaN),
-  }).optional();
+      : {
+          deadband: quantity(deadband, { min: 0, max: 1e6 }, Number.NaN).describe(
+            "How far it must come back before a warning ends.",
+          ),
+        }),
+    "safety-time": quantity("time", { min: 1, max: 3_600_000 }, Number.NaN).describe(
+      "Longest time from the hazard to dark.",
+    ),
+  })
+    .describe(`Watches: ${row.measures}.`)
+    .optional();
 }
 
 /** NaN stands for "not written": null is taken by the word `none`. */
@@ -47,7 +56,8 @@ function factOrNone() {
       };
       context.addIssue({ code: "custom", params, message: advice });
       return z.NEVER;
-    });
+    })
+    .meta(wordShape("a plain fact, without a level", ["yes", "no", "none"], undefined));
 }
 
 const WRITABLE = HAZARD_IDS.filter((id) => HAZARD_ROWS[id].follows === null);
