@@ -1,4 +1,4 @@
-import { spawn, spawnSync } from "node:child_process";
+import { type ChildProcess, spawn, spawnSync } from "node:child_process";
 import { once } from "node:events";
 import { mkdirSync, readdirSync, readFileSync, truncateSync, writeFileSync } from "node:fs";
 import { createServer, type Server } from "node:net";
@@ -285,14 +285,28 @@ describe("a terminal that nobody reads", () => {
     }
   }
 
-  test("a reader that stands still, and then goes away, does not touch the bench", async () => {
-    const run = `"${process.execPath}" "${CLI}" run --port 0 --json --stay-dark`;
-    const shell = spawn("sh", ["-c", `${run} | sleep 1000`], {
-      env: place.env,
-      detached: true,
-      stdio: "ignore",
-    });
+  const run = `'${process.execPath}' '${CLI}' run --port 0 --json --stay-dark`;
+
+  /** Runs a pipeline whose last part, `sleep`, reads nothing. */
+  function pipeline(first: string): ChildProcess {
+    const options = { env: place.env, detached: true, stdio: "ignore" } as const;
+    const shell = spawn("sh", ["-c", `${first} | sleep 1000`], options);
     ends.push(() => shell.pid !== undefined && process.kill(-shell.pid, "SIGKILL"));
+    return shell;
+  }
+
+  test("a terminal that stands still does not hold up the judge", async () => {
+    // `script` gives a terminal; it stops reading it when its own output is stuck.
+    pipeline(`script -qfc "${run}" /dev/null`);
+    const client = await clientOf("north");
+    await manyEvents(client);
+    const { snapshot } = await client.ask({ verb: "status" });
+    expect(snapshot?.state).not.toBe("tripped");
+    await client.ask({ verb: "stop" });
+  });
+
+  test("a reader that goes away does not end the daemon", async () => {
+    const shell = pipeline(run);
     const client = await clientOf("north");
     await manyEvents(client);
     const { stdout } = spawnSync("pgrep", ["-P", String(shell.pid), "sleep"], { encoding: "utf8" });
