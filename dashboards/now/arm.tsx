@@ -10,8 +10,8 @@ const ANSWER_ms = 15_000;
 
 /** The form for a current: typed, read back, and repeated by the button that sends it. */
 export function Arm({ now }: { now: Snapshot }): VNode {
-  if (now.watchOnly) {
-    return <p class="bs-arm">This bench is only watched; light is not switched from here.</p>;
+  if (now.enforcement !== "permit") {
+    return <p class="bs-arm">This bench takes no permits; light is not switched on from here.</p>;
   }
   if (now.state === "tripped") return <p class="bs-arm">Arming opens after the reset.</p>;
   if (now.state === "offline")

@@ -105,7 +105,7 @@ function eventTags(scene: Scene): NamedTag[] {
   return told.map((e) => ({
     x: xAt(axis, e.at),
     text: layout.phone ? clock(e.at) : `${clock(e.at)} ${eventWord(e)}`,
-    rank: RANKS[e.weight],
+    rank: e.kind === "connected" ? 1 : RANKS[e.weight],
     class: CLASSES[e.weight],
     isTime: false,
   }));

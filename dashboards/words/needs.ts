@@ -61,8 +61,7 @@ const seconds = (ms: number): string => `${(ms / 1000).toFixed(2)}\u00a0s`;
 
 /** What holds when everybody leaves, from the permit's term and the stage's fall time. */
 export function promise(now: Snapshot): string[] {
-  if (now.watchOnly)
-    return ["This bench is only watched: with this computer dead, nothing cuts its light."];
+  if (now.enforcement !== "permit") return [now.enforced];
   if (now.state === "offline") return ["No controller is connected, so nothing can be said of it."];
   const { term_ms, fall_ms, loopDelayWorst_ms, rate_perS } = now.link;
   const out = [

@@ -106,6 +106,8 @@ export function snapshotOf(kind: Kind, at: number): Snapshot {
     capped: kind === "held",
     delayLeft_ms: 0,
     watchOnly: false,
+    enforcement: "permit",
+    enforced: "Light needs a permit for every judged sample.",
     builtIn: true,
     hand: false,
     asked_mA: m.asked,
