@@ -195,8 +195,9 @@ describe("what needs somebody", () => {
 
   test("the promise is the term and the fall time; a watched bench promises nothing", () => {
     expect(plain(promise(snapshotOf("calm", 0)).join(" "))).toContain("dark within 0.51 s");
-    const watched = { ...snapshotOf("calm", 0), watchOnly: true };
-    expect(promise(watched).join(" ")).toContain("nothing cuts its light");
+    const enforced = "It is only watched; nothing here cuts its light.";
+    const watched = { ...snapshotOf("calm", 0), enforcement: "none" as const, enforced };
+    expect(promise(watched)).toEqual([enforced]);
   });
 });
 
