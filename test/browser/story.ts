@@ -107,8 +107,6 @@ export function snapshotOf(kind: Kind, at: number): Snapshot {
     delayLeft_ms: 0,
     watchOnly: false,
     enforcement: "permit",
-    enforced: "Light needs a fresh permit.",
-    enforcement: "permit",
     enforced: "Light needs a permit for every judged sample.",
     builtIn: true,
     hand: false,
