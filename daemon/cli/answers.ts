@@ -35,6 +35,14 @@ export const Checked = z.strictObject({
 /** check --explain: what a code or a row means, in sentences. */
 export const Explained = z.strictObject({ row: z.string(), lines: z.array(z.string()) });
 
+/** init: what was written, and what to do next. */
+export const Initiated = z.strictObject({
+  file: z.string(),
+  bench: z.string(),
+  hints: z.number().int(),
+  next: z.array(z.string()),
+});
+
 /** dark: which way each bench was reached. */
 export const Darkened = z.strictObject({
   benches: z.array(

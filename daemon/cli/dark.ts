@@ -45,23 +45,30 @@ async function darken(notice: Notice): Promise<Darkened> {
   const { bench } = notice;
   // Both at once: a dark too many does no harm, and nobody waits for the way that is stuck.
   const ways = [
-    askSwitch(notice).then((words) => ({ bench, ok: true, way: "switch" as const, words })),
-    askPort(notice).then((words) => ({ bench, ok: true, way: "dark port" as const, words })),
+    askSwitch(notice).then((told) => ({ bench, way: "switch" as const, ...told })),
+    askPort(notice).then((told) => ({ bench, way: "dark port" as const, ...told })),
   ];
   return (await within(Promise.any(ways))) ?? endDaemon(notice);
 }
 
-async function askSwitch(notice: Notice): Promise<string> {
+/** What a way said. A bench that is only watched refuses, and says that nothing here cuts it. */
+interface Said {
+  readonly ok: boolean;
+  readonly words: string;
+}
+
+async function askSwitch(notice: Notice): Promise<Said> {
   const client = await SwitchClient.connect(notice.socket);
   const answer = await client.ask({ verb: "dark", asker: "person" });
   client.close();
-  return answer.words;
+  return { ok: answer.ok, words: answer.words };
 }
 
-async function askPort(notice: Notice): Promise<string> {
+async function askPort(notice: Notice): Promise<Said> {
   const response = await fetch(`http://127.0.0.1:${notice.darkPort}/dark`, { method: "POST" });
-  const body = (await response.json()) as { words?: unknown };
-  return typeof body.words === "string" ? body.words : "Dark was heard.";
+  const body = (await response.json()) as { ok?: unknown; words?: unknown };
+  const words = typeof body.words === "string" ? body.words : "Dark was heard.";
+  return { ok: body.ok !== false, words };
 }
 
 /** What the quicker way said, or null where neither answered in time: then the daemon is ended. */

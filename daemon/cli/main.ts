@@ -2,6 +2,9 @@ import { Failed } from "./answers.ts";
 import { makeProgram } from "./program.ts";
 import { codeOf, EXIT, jsonLine, reasonOf, Trouble, terminalColumns, wrapped } from "./say.ts";
 
+/** What commander throws after it has told what was asked for. */
+const TOLD = new Set(["commander.help", "commander.helpDisplayed", "commander.version"]);
+
 // Whoever read our output has gone (`| head`): there is nobody left to tell, and that is no error.
 process.stdout.on("error", (error) => {
   if (codeOf(error) !== "EPIPE") process.stderr.write(`Output stopped: ${reasonOf(error)}\n`);
@@ -29,7 +32,7 @@ function report(error: unknown): number {
   // commander has already written its own sentence; help and version are no errors.
   const code = codeOf(error);
   if (code.startsWith("commander.")) {
-    return code === "commander.help" || code === "commander.helpDisplayed" ? EXIT.done : EXIT.usage;
+    return TOLD.has(code) ? EXIT.done : EXIT.usage;
   }
   throw error;
 }

@@ -1,10 +1,15 @@
+import { readFileSync } from "node:fs";
+import { join } from "node:path";
 import { Command } from "commander";
+import { z } from "zod";
+import { packageRoot } from "../paths.ts";
 import { adoptCommand } from "./adopt.ts";
 import { armCommand } from "./arm.ts";
 import { checkCommand } from "./check.ts";
 import { darkCommand } from "./dark.ts";
 import { demoCommand } from "./demo.ts";
 import { exportCommand } from "./export.ts";
+import { initCommand } from "./init.ts";
 import { listenCommand } from "./listen.ts";
 import { openCommand } from "./open.ts";
 import { portsCommand } from "./ports.ts";
@@ -29,6 +34,7 @@ export function makeProgram(): Command {
         "Not a certified safety function: hardware interlocks and your laser safety officer come first.",
     )
     .helpCommand("help [command]", "explain a command")
+    .version(versionOf(), "--version", "print the version")
     .addHelpText("after", EXAMPLES)
     .addHelpText(
       "afterAll",
@@ -36,6 +42,7 @@ export function makeProgram(): Command {
     )
     .exitOverride();
   for (const command of [
+    initCommand(),
     checkCommand(),
     runCommand(),
     demoCommand(),
@@ -55,6 +62,12 @@ export function makeProgram(): Command {
     program.addCommand(command.showHelpAfterError(help).exitOverride());
   }
   return program.showHelpAfterError("(beamsitter --help lists the commands)");
+}
+
+/** The version of this package, as its own file says. */
+function versionOf(): string {
+  const text = readFileSync(join(packageRoot, "package.json"), "utf8");
+  return z.object({ version: z.string() }).parse(JSON.parse(text)).version;
 }
 
 /** An option given twice leaves open which one is meant; commander would take the last. */

@@ -21,6 +21,7 @@ export const statusCommand = (): Command =>
 function statusLines(s: Snapshot): string[] {
   const lines = [s.sentence];
   if (s.next !== "") lines.push(s.next);
+  if (s.enforcement !== "permit") lines.push(s.enforced);
   if (s.cause !== null) lines.push(resetWords(s.bench, s.cause.id));
   for (const w of s.warnings) lines.push(`Warning: ${w.words}`);
   if (s.link.words !== "") lines.push(`Link: ${s.link.words}`);

@@ -193,7 +193,7 @@ describe("a bench file that cannot be used: refused before anything starts", () 
 });
 
 describe("a place that is taken: refused before anything starts, nothing lost", () => {
-  test("two daemons of one bench, and two on one data folder", async () => {
+  test("two daemons of one bench, on one data folder, and on one page port", async () => {
     const first = await started("north", "--stay-dark");
     const again = await runCli(place, "run", "--port", "0", "--data", join(place.folder, "other"));
     expect(again.code).toBe(4);
@@ -207,10 +207,14 @@ describe("a place that is taken: refused before anything starts, nothing lost", 
     expect(shared.stderr).toContain("is in use.");
     expect(shared.stderr).toContain(`${first.child.pid}`);
     expect(shared.stderr).toContain("name another folder with --data");
+    const port = new URL(first.notice.page).port;
+    const paged = await runCli(place, "run", "--bench", file, "--port", port);
+    expect(paged.code).toBe(4);
+    expect(paged.stderr).toContain("is in use by the daemon of bench north.");
     expect((await first.snapshot()).recorder.words).toBe("");
   });
 
-  test("a page port in use, by another program and by another daemon", async () => {
+  test("a page port in use by another program", async () => {
     const server = createServer().listen(0, "127.0.0.1");
     await once(server, "listening");
     ends.push(() => server.close());

@@ -98,11 +98,18 @@ describe("slips, at the built command line", () => {
     [["sttus"], "Did you mean status?"],
     [["demo", "--seeed", "7"], "Did you mean --seed?"],
     [["run", "--stay-drak"], "Did you mean --stay-dark?"],
+    [["reset", "permit-expird"], "did you mean permit-expired?"],
   ])("%j is named", async (line, words) => {
     const { code, stderr, stdout } = await runCli(place, ...line);
     expect(code).toBe(2);
     expect(stderr).toContain(words);
     expect(stdout).toBe("");
+  });
+
+  test("the version is that of the package", async () => {
+    const { code, stdout } = await runCli(place, "--version");
+    expect(code).toBe(0);
+    expect(stdout).toMatch(/^\d+\.\d+\.\d+\n$/);
   });
 
   test("a trouble is told in words, and with --json as one object that says the same", async () => {
