@@ -1,15 +1,13 @@
 import { crc32 } from "node:zlib";
+import { readPacked, writePacked } from "./codec-packed.ts";
+import { readPlain, writePlain } from "./codec-plain.ts";
 
 /**
- * Codec 0: columns of integers, each as narrow as its own range allows, so that any column can be
- * read alone. BLOCKS.md has the layout byte by byte. Values come back bit for bit, NaN included.
+ * Blocks of columns, in two codecs, laid out byte by byte in BLOCKS.md; any column can be read
+ * alone, and values come back bit for bit, NaN included. Codec 0 is quick to write: it holds the
+ * tail. Codec 1 is small. Codec 255 is a block whose full rate was retired: it has no bytes.
  */
-export const CODEC = 0;
-
-const HEADER_BYTES = 8;
-const ENTRY_BYTES = 16;
-const FORM = { constant: 0, u8: 1, u16: 2, u32: 4, f64: 8 } as const;
-type Form = (typeof FORM)[keyof typeof FORM];
+export const CODEC = { plain: 0, packed: 1, retired: 255 } as const;
 
 /** One named row of numbers; `values` may be longer than the block. */
 export interface Column {
@@ -18,7 +16,11 @@ export interface Column {
   readonly values: Float64Array;
 }
 
+/** How to read each column of a blob; null where its bytes make no sense. */
+export type Columns = ReadonlyMap<number, () => Float64Array | null>;
+
 export interface Coded {
+  readonly codec: number;
   readonly blob: Uint8Array;
   readonly crc: number;
 }
@@ -26,141 +28,50 @@ export interface Coded {
 /** Why a block cannot be read. A value, not an exception: the rest of the record is served. */
 export type BlockFault = { readonly fault: string };
 
-/** Packs rows `from` … `to` (not included) of all columns. */
+/** Writes rows `from` … `to` (not included) of all columns with codec 0. */
 export function encodeColumns(columns: readonly Column[], from: number, to: number): Coded {
-  const n = to - from;
-  const shapes = columns.map((column) => shapeOf(column.values, from, to));
-  let size = HEADER_BYTES + columns.length * ENTRY_BYTES;
-  for (const shape of shapes) size += shape.form * n;
-  const blob = new Uint8Array(size);
-  const view = new DataView(blob.buffer);
-  view.setUint32(0, n, true);
-  view.setUint16(4, columns.length, true);
-  let offset = HEADER_BYTES + columns.length * ENTRY_BYTES;
-  columns.forEach((column, i) => {
-    const { form, base } = shapes[i] as Shape;
-    const entry = HEADER_BYTES + i * ENTRY_BYTES;
-    view.setUint16(entry, column.id, true);
-    view.setUint8(entry + 2, form);
-    view.setUint32(entry + 4, offset, true);
-    view.setFloat64(entry + 8, base, true);
-    writeColumn(view, offset, column.values.subarray(from, to), form, base);
-    offset += form * n;
-  });
-  return { blob, crc: crc32(blob) };
+  const blob = writePlain(columns, from, to);
+  return { codec: CODEC.plain, blob, crc: crc32(blob) };
 }
 
-interface Shape {
-  readonly form: Form;
-  readonly base: number;
-}
-
-function shapeOf(values: Float64Array, from: number, to: number): Shape {
-  const first = from < to ? (values[from] as number) : 0;
-  let least = first;
-  let most = first;
-  let constant = true;
-  for (let i = from; i < to; i++) {
-    const value = values[i] as number;
-    if (constant && !Object.is(value, first)) constant = false;
-    if (!Number.isSafeInteger(value) || Object.is(value, -0)) {
-      if (!constant) return { form: FORM.f64, base: 0 };
-      continue;
-    }
-    if (value < least) least = value;
-    if (value > most) most = value;
-  }
-  if (constant) return { form: FORM.constant, base: first };
-  // A first value that is no integer is only seen as such here: the loop compares with it.
-  if (!Number.isSafeInteger(first) || Object.is(first, -0)) return { form: FORM.f64, base: 0 };
-  const range = most - least;
-  if (range < 0x100) return { form: FORM.u8, base: least };
-  if (range < 0x10000) return { form: FORM.u16, base: least };
-  if (range < 0x100000000) return { form: FORM.u32, base: least };
-  return { form: FORM.f64, base: 0 };
-}
-
-function writeColumn(
-  view: DataView,
-  offset: number,
-  values: Float64Array,
-  form: Form,
-  base: number,
-): void {
-  const n = values.length;
-  if (form === FORM.u8) {
-    for (let i = 0; i < n; i++) view.setUint8(offset + i, (values[i] as number) - base);
-  } else if (form === FORM.u16) {
-    for (let i = 0; i < n; i++) view.setUint16(offset + 2 * i, (values[i] as number) - base, true);
-  } else if (form === FORM.u32) {
-    for (let i = 0; i < n; i++) view.setUint32(offset + 4 * i, (values[i] as number) - base, true);
-  } else if (form === FORM.f64) {
-    for (let i = 0; i < n; i++) view.setFloat64(offset + 8 * i, values[i] as number, true);
-  }
+/** Packs rows `from` … `to` (not included, VALUES_MAX at most) of all columns with codec 1. */
+export function packColumns(columns: readonly Column[], from: number, to: number): Coded {
+  const blob = writePacked(columns, from, to);
+  return { codec: CODEC.packed, blob, crc: crc32(blob) };
 }
 
 /** A block opened for reading: its columns are decoded one at a time, when asked for. */
 export class Block {
   readonly n: number;
-  readonly #view: DataView;
-  readonly #entries: ReadonlyMap<number, number>;
+  readonly #columns: Columns;
 
-  private constructor(view: DataView, n: number, entries: ReadonlyMap<number, number>) {
-    this.#view = view;
+  private constructor(n: number, columns: Columns) {
     this.n = n;
-    this.#entries = entries;
+    this.#columns = columns;
   }
 
   /** Checks codec, checksum and that every column lies inside the blob. */
   static open(codec: number, crc: number, blob: Uint8Array): Block | BlockFault {
-    if (codec !== CODEC) return { fault: `its codec is ${codec}; codec ${CODEC} is known here` };
+    if (codec === CODEC.retired) return { fault: "its full rate was retired" };
+    if (codec !== CODEC.plain && codec !== CODEC.packed) {
+      return { fault: `its codec is ${codec}; codecs up to ${CODEC.packed} are known here` };
+    }
     const found = crc32(blob);
     if (found !== crc) return { fault: `its checksum is ${found}, ${crc} was stored` };
-    if (blob.length < HEADER_BYTES) return { fault: "it is shorter than its header" };
-    const view = new DataView(blob.buffer, blob.byteOffset, blob.byteLength);
-    const n = view.getUint32(0, true);
-    const count = view.getUint16(4, true);
-    if (HEADER_BYTES + count * ENTRY_BYTES > blob.length) {
-      return { fault: "it is shorter than its directory" };
-    }
-    const entries = new Map<number, number>();
-    for (let i = 0; i < count; i++) {
-      const entry = HEADER_BYTES + i * ENTRY_BYTES;
-      const end = view.getUint32(entry + 4, true) + view.getUint8(entry + 2) * n;
-      if (end > blob.length) return { fault: `its column ${i} ends outside it` };
-      entries.set(view.getUint16(entry, true), entry);
-    }
-    return new Block(view, n, entries);
+    const read = codec === CODEC.plain ? readPlain(blob) : readPacked(blob);
+    return "fault" in read ? read : new Block(read.n, read.columns);
   }
 
   has(id: number): boolean {
-    return this.#entries.has(id);
+    return this.#columns.has(id);
   }
 
   get ids(): number[] {
-    return [...this.#entries.keys()];
+    return [...this.#columns.keys()];
   }
 
   /** The values of a column, or null where this block has none of that id. */
   column(id: number): Float64Array | null {
-    const entry = this.#entries.get(id);
-    if (entry === undefined) return null;
-    const view = this.#view;
-    const n = this.n;
-    const form = view.getUint8(entry + 2);
-    const offset = view.getUint32(entry + 4, true);
-    const base = view.getFloat64(entry + 8, true);
-    const values = new Float64Array(n);
-    if (form === FORM.constant) values.fill(base);
-    else if (form === FORM.u8) {
-      for (let i = 0; i < n; i++) values[i] = base + view.getUint8(offset + i);
-    } else if (form === FORM.u16) {
-      for (let i = 0; i < n; i++) values[i] = base + view.getUint16(offset + 2 * i, true);
-    } else if (form === FORM.u32) {
-      for (let i = 0; i < n; i++) values[i] = base + view.getUint32(offset + 4 * i, true);
-    } else {
-      for (let i = 0; i < n; i++) values[i] = view.getFloat64(offset + 8 * i, true);
-    }
-    return values;
+    return this.#columns.get(id)?.() ?? null;
   }
 }

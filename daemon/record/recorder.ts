@@ -8,7 +8,7 @@ import type {
   ToRecorder,
 } from "../model/record-messages.ts";
 import { Ring, ROW } from "../model/ring.ts";
-import { encodeColumns } from "./blocks.ts";
+import { encodeColumns, packColumns } from "./blocks.ts";
 import { latchAfter } from "./latch.ts";
 import { problemOf } from "./problem.ts";
 import { rollUp } from "./rollup.ts";
@@ -306,7 +306,8 @@ export class Recorder {
     this.#pending.push({ op: "gap", bench, from_wall_ms: before, to_wall_ms: wall });
   }
 
-  #rowsOf(staging: Staging, from: number): StoredRows | null {
+  /** Rows from `from` on, whole blocks packed, chunks of the tail as they are. */
+  #rowsOf(staging: Staging, from: number, pack: typeof packColumns): StoredRows | null {
     if (this.#session === null || this.#manifest === null) return null;
     return {
       block: this.#block,
@@ -316,14 +317,14 @@ export class Recorder {
       benchFile: this.#benchFile,
       ...staging.bounds(from, staging.n),
       n: staging.n - from,
-      coded: encodeColumns(staging.columns, from, staging.n),
+      coded: pack(staging.columns, from, staging.n),
     };
   }
 
   #finishBlock(): void {
     const staging = this.#staging;
     if (staging === null || staging.n === 0) return;
-    const rows = this.#rowsOf(staging, 0);
+    const rows = this.#rowsOf(staging, 0, packColumns);
     if (rows !== null) {
       const source = { n: staging.n, column: (id: number) => staging.column(id) };
       const rollup = rollUp(source, staging.manifest);
@@ -345,7 +346,7 @@ export class Recorder {
     this.#committed_ms = this.#now();
     const staging = this.#staging;
     const unstored = staging !== null && staging.n > this.#storedRows;
-    const rows = unstored ? this.#rowsOf(staging, this.#storedRows) : null;
+    const rows = unstored ? this.#rowsOf(staging, this.#storedRows, encodeColumns) : null;
     const ops = [...this.#pending];
     if (rows !== null) ops.push({ op: "tail", rows });
     const samples = this.#lostRows;

@@ -1,6 +1,6 @@
 import type { Manifest } from "../model/manifest.ts";
 import { ROW } from "../model/ring.ts";
-import { type Coded, type Column, encodeColumns } from "./blocks.ts";
+import { type Coded, type Column, packColumns } from "./blocks.ts";
 import { type ChannelPlace, isFresh, placesOf } from "./columns.ts";
 
 /**
@@ -81,7 +81,7 @@ export function rollUp(rows: RowSource, manifest: Manifest): Coded {
       columns.push({ id: rollupColumn(place.column, kind), values: Float64Array.from(packed) });
     }
   }
-  return encodeColumns(columns, 0, second.length);
+  return packColumns(columns, 0, second.length);
 }
 
 /** The distinct seconds of a block in ascending order, and the slot of each row. */

@@ -3,7 +3,7 @@ import type Database from "better-sqlite3";
 import type { BenchEvent } from "../model/event.ts";
 import type { Manifest } from "../model/manifest.ts";
 import type { JournalEntry, SessionKind, StoredLatch } from "../model/record-messages.ts";
-import { CODEC, type Coded } from "./blocks.ts";
+import type { Coded } from "./blocks.ts";
 import { closeWritten, type FolderLock, lockFolder, openForWriting } from "./folder.ts";
 import { type LatchRow, latchFrom } from "./latch.ts";
 import { errorCode, problemOf } from "./problem.ts";
@@ -263,7 +263,7 @@ export class Store {
         break;
       case "block":
         run("block", ...rowValues(op.rows));
-        run("rollup", op.rows.block, CODEC, op.rollup.crc, op.rollup.blob);
+        run("rollup", op.rows.block, op.rollup.codec, op.rollup.crc, op.rollup.blob);
         run("tailDone", op.rows.block);
         run("seen", op.unseen, op.rows.t1, op.rows.session);
         break;
@@ -306,7 +306,7 @@ function latchValues(latch: StoredLatch | null): (number | string | null)[] {
 
 const rowValues = (r: StoredRows): unknown[] => [
   ...[r.block, r.session, r.run, r.t0, r.t1, r.input0, r.input1, r.n, r.manifest, r.benchFile],
-  ...[CODEC, r.coded.crc, r.coded.blob],
+  ...[r.coded.codec, r.coded.crc, r.coded.blob],
 ];
 
 function idOf(known: Map<string, number>, text: string, isNew: (id: number) => void): number {

@@ -55,7 +55,7 @@ test(`a second's n, min, sum, max and m2 are those of its fresh and known values
       ]);
       const source = { n: rows.length, column: (id: number) => columns.get(id) ?? null };
       const coded = rollUp(source, MANIFEST);
-      const block = Block.open(0, coded.crc, coded.blob);
+      const block = Block.open(coded.codec, coded.crc, coded.blob);
       if ("fault" in block) throw new Error(block.fault);
       const secondOf = (i: number): number => Math.floor((walls[i] as number) / 1000);
       const seconds = [...new Set(rows.map((_, i) => secondOf(i)))].sort((a, b) => a - b);
