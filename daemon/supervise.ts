@@ -68,6 +68,7 @@ export class Supervision {
         wall: () => wall(Date.now()),
         write: (line) => this.#link?.write(line) ?? false,
         drained: () => this.#link?.drained ?? false,
+        level: (order) => this.#link?.level(order),
         record: (message) => options.record(message),
         event: (event) => {
           this.#switch?.push({ push: "event", event });
@@ -123,11 +124,7 @@ export class Supervision {
 
   /** Sends a dark past everything: the last act after a defect. */
   emergency(cause: number): void {
-    this.loop.session.dark(cause);
-    for (let line = this.loop.session.takeLine(); line !== null; ) {
-      this.#link?.write(line);
-      line = this.loop.session.takeLine();
-    }
+    this.loop.emergency(cause);
   }
 
   snapshot(): Snapshot {
@@ -269,7 +266,7 @@ export class Supervision {
 }
 
 /** Places in a bench file that decide how the daemon connects. */
-const AT_START = /^controller\.(connect|board|rate) /;
+const AT_START = /^controller\.(connect|board|rate|stream|cut-off)\b/;
 
 const form = (words: string, lines: readonly string[] = []): LoopAnswer => ({
   ok: false,

@@ -32,6 +32,8 @@ export function makeCurve(
   bench: Bench,
   manifest: Manifest,
 ): CurveTable | { readonly problems: readonly string[] } {
+  // A controller with firmware of its own holds no curve, and nothing is loaded into it.
+  if (bench.controller.stream !== undefined) return { x: [], y: [], loss_counts: 0 };
   const caseChannel = channelNamed(manifest, "case");
   const setChannel = channelNamed(manifest, "set");
   const problems = channelProblems(bench, caseChannel, setChannel);

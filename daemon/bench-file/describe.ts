@@ -3,6 +3,7 @@ import type { Conversion } from "../model/conversion.ts";
 import { HAZARD_ROWS } from "../model/hazard-rows.ts";
 import { formatQuantity } from "../model/quantities.ts";
 import { KINDS, type QuantityKind } from "../model/quantity-units.ts";
+import { enforcementWords, type StreamSpec } from "../model/stream.ts";
 import { REACTION_ms, slowestRates } from "./lints/hazards.ts";
 import { wireShares } from "./lints/link.ts";
 import { worstHeating_K } from "./lints/sensors.ts";
@@ -35,8 +36,10 @@ export function differences(a: Bench, b: Bench): string[] {
  */
 export function consequences(bench: Bench): string[] {
   const sentences: string[] = [];
+  const { stream } = bench.controller;
+  if (stream !== undefined) sentences.push(enforcementWords(stream));
   const { up, down } = wireShares(bench);
-  if (up > 0) {
+  if (up > 0 && stream === undefined) {
     const shares = `${formatQuantity("ratio", up)} of the line upward, ${formatQuantity("ratio", down)} downward`;
     sentences.push(`The wire: samples and permits fill at most ${shares}.`);
   }
@@ -45,6 +48,10 @@ export function consequences(bench: Bench): string[] {
     if (heating_K === 0) continue;
     const words = formatQuantity("difference", heating_K, 0.01);
     sentences.push(`The sensor of ${name}: its divider warms it by up to ${words}.`);
+  }
+  if (stream?.cutOff === null) {
+    sentences.push("No row of the hazards cuts the light; each tells when its limit is passed.");
+    return sentences;
   }
   sentences.push(
     `Each row below counts ${REACTION_ms} ms for line, judge and fall of the current within its safety time.`,
@@ -105,6 +112,20 @@ function addController(facts: Facts, { controller }: Bench): void {
   facts.set("controller.board", controller.serial ?? "any");
   facts.set("controller.rate", exact("rate", controller.rate_perS));
   facts.set("controller.term", exact("time", controller.term_ms));
+  addStream(facts, controller.stream);
+}
+
+function addStream(facts: Facts, stream: StreamSpec | undefined): void {
+  if (stream === undefined) return;
+  const { format, separator, decimals, time, banner, columns, cutOff } = stream;
+  facts.set(
+    "controller.stream",
+    `${format}, separator ${separator}, decimals ${decimals}, time ${time?.from ?? "none"}, banner "${banner}"`,
+  );
+  for (const { channel, from, unit, perCount } of columns) {
+    facts.set(`controller.stream.columns.${channel}`, `${from}, ${perCount} ${unit} a count`);
+  }
+  if (cutOff !== null) facts.set("controller.cut-off", JSON.stringify(cutOff));
 }
 
 function addDiode(facts: Facts, { diode }: Bench): void {

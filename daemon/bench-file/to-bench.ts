@@ -11,11 +11,13 @@ import { kindFindings } from "./channel-kinds.ts";
 import type { Finding } from "./problem.ts";
 import type { BenchFile } from "./schema.ts";
 import { hazardLevels } from "./schema-hazards.ts";
+import { type StreamParts, streamOf } from "./to-stream.ts";
 
 /** The bench of a file whose every value has been read; findings are combinations that cannot be. */
 export function toBench(file: BenchFile): { bench: Bench; findings: Finding[] } {
   const findings: Finding[] = [];
-  const controller = controllerOf(file, findings);
+  const stream = streamOf(file, findings);
+  const controller = controllerOf(file, stream, findings);
   const bench: Bench = {
     name: file.bench,
     title: file.title === "" ? file.bench : file.title,
@@ -32,7 +34,7 @@ export function toBench(file: BenchFile): { bench: Bench; findings: Finding[] } 
       recover_ms: file.limits["recover-after"],
     },
     derating: file.derating.map((point) => ({ case_degC: point.case, current_mA: point.current })),
-    conversions: conversionsOf(file, findings),
+    conversions: { ...stream?.conversions, ...conversionsOf(file, findings) },
     hazards: hazardLevels(file.hazards ?? {}, {
       rate_perS: controller.rate_perS,
       term_ms: controller.term_ms,
@@ -44,7 +46,14 @@ export function toBench(file: BenchFile): { bench: Bench; findings: Finding[] } 
   return { bench, findings };
 }
 
-function controllerOf(file: BenchFile, findings: Finding[]): ControllerPart {
+/** A watched bench has no permits; the term is then only how long samples may stay out. */
+const TERM_PERIODS_WATCHED = 5;
+
+function controllerOf(
+  file: BenchFile,
+  stream: StreamParts | null,
+  findings: Finding[],
+): ControllerPart {
   const { connect, board, rate, term } = file.controller;
   const missing = (key: string, example: string): void => {
     findings.push({
@@ -59,12 +68,15 @@ function controllerOf(file: BenchFile, findings: Finding[]): ControllerPart {
   if (connect.kind === "serial" && connect.path === "") missing("path", "/dev/ttyACM0");
   if (connect.kind === "tcp" && connect.host === "") missing("host", "192.168.1.20");
   if (connect.kind === "tcp" && connect.port === 0) missing("port", "4160");
-  return {
+  const part: ControllerPart = {
     transport: transportOf(connect),
     serial: board === "any" ? null : board,
     rate_perS: rate,
     term_ms: term,
   };
+  if (stream === null) return part;
+  const term_ms = Math.max(term, (TERM_PERIODS_WATCHED * 1000) / rate);
+  return { ...part, term_ms, stream: stream.spec };
 }
 
 function transportOf(connect: BenchFile["controller"]["connect"]): TransportSpec {

@@ -1,4 +1,5 @@
 import { z } from "zod";
+import { ENFORCEMENTS } from "../model/stream.ts";
 
 /** The one description of what travels over the switch, the desk and `--json`. */
 
@@ -23,6 +24,10 @@ export const Snapshot = z.object({
   capped: z.boolean(),
   delayLeft_ms: z.number(),
   watchOnly: z.boolean(),
+  /** permit: light needs one. toggled: light needs the judge. on-command: it can be cut. none. */
+  enforcement: z.enum(ENFORCEMENTS),
+  /** What is enforced and what is not, in a sentence. */
+  enforced: z.string(),
   builtIn: z.boolean(),
   /** A page on another machine may arm only after an act at the bench within 60 s. */
   hand: z.boolean(),

@@ -36,7 +36,7 @@ export function judgeWarnings(plan: Plan, state: State, out: Out): void {
   for (let row = 0; row < ROWS; row++) {
     const value = state.warnValue[row] as number;
     const level = plan.warn[row] as number;
-    if (state.warned[row] === 1) judgeOver(plan, state, out, row);
+    if (state.warned[row] !== 0) judgeOver(plan, state, out, row);
     else if (isBeyond(row, value, level)) {
       if (Number.isNaN(state.warnSince[row] as number)) state.warnSince[row] = state.board_ms;
       const stood_ms = state.board_ms - (state.warnSince[row] as number);
@@ -68,21 +68,26 @@ export function judgeTrips(plan: Plan, state: State, out: Out): void {
   const lit = isLit(state) ? 1 : 0;
   const connected = state.state === STATE.tripped ? 0 : 1;
   for (let row = 0; row < ROWS; row++) {
-    const value = state.tripValue[row] as number;
-    const level = plan.trip[row] as number;
-    if (!isBeyond(row, value, level)) {
-      state.tripSince[row] = Number.NaN;
-      state.tripSamples[row] = 0;
-      continue;
-    }
-    if (state.tripSamples[row] === 0) state.tripSince[row] = state.board_ms;
-    state.tripSamples[row] = (state.tripSamples[row] as number) + 1;
+    if (!standsBeyond(plan, state, row)) continue;
     const acts =
       ((TRIPS_WHEN_LIT[row] as number) & lit) | ((TRIPS_CONNECTED[row] as number) & connected);
-    if (acts === 0 || !hasStood(plan, state, row)) continue;
-    trip(state, out, HAZARDS[row]?.cause ?? 255, value, level);
+    if (acts === 0) continue;
+    const value = state.tripValue[row] as number;
+    trip(state, out, HAZARDS[row]?.cause ?? 255, value, plan.trip[row] as number);
     return;
   }
+}
+
+/** Follows how long a row stands beyond its trip level; whether it has done so for its delay. */
+export function standsBeyond(plan: Plan, state: State, row: number): boolean {
+  if (!isBeyond(row, state.tripValue[row] as number, plan.trip[row] as number)) {
+    state.tripSince[row] = Number.NaN;
+    state.tripSamples[row] = 0;
+    return false;
+  }
+  if (state.tripSamples[row] === 0) state.tripSince[row] = state.board_ms;
+  state.tripSamples[row] = (state.tripSamples[row] as number) + 1;
+  return hasStood(plan, state, row);
 }
 
 /** Whether a row has stood for its delay, to the nearest sample, over enough samples. */

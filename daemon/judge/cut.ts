@@ -1,5 +1,5 @@
 import { causeOf } from "../model/cause.ts";
-import { type Out, STATE } from "./records.ts";
+import { type Out, STATE, WATCH } from "./records.ts";
 import type { State } from "./state.ts";
 import { EVENT, tell } from "./tell.ts";
 
@@ -9,6 +9,7 @@ import { EVENT, tell } from "./tell.ts";
  */
 
 const PERSON = 0;
+const CUT_BY_PERSON = 89;
 
 /** Whether a session is open: the bench is armed or emits. */
 export const isLit = (state: State): boolean =>
@@ -42,6 +43,8 @@ function endSession(state: State): void {
  * @param a,b the numbers that tripped: what was measured, and the level
  */
 export function trip(state: State, out: Out, cause: number, a: number, b: number): void {
+  // Nothing here can cut, and "tripped" would be a lie; what was passed is told in watch.ts.
+  if (state.watch === WATCH.only) return;
   order(state, out, cause);
   if (state.state === STATE.tripped) return;
   state.state = STATE.tripped;
@@ -55,6 +58,11 @@ export function trip(state: State, out: Out, cause: number, a: number, b: number
  * where light was on; while tripped the bench stays tripped.
  */
 export function goDark(state: State, out: Out, cause: number): void {
+  if (state.watch !== WATCH.none) {
+    // A cut-off holds until somebody lets it go, so every use of it latches.
+    trip(state, out, cause === PERSON ? CUT_BY_PERSON : cause, state.current_mA, state.case_degC);
+    return;
+  }
   const wasLit = isLit(state);
   if (wasLit && causeOf(cause).latches) {
     trip(state, out, cause, state.current_mA, state.case_degC);

@@ -2,7 +2,7 @@ import { linkFactCode } from "../model/link-fact.ts";
 import { release } from "./cap.ts";
 import { goDark, isLit, trip } from "./cut.ts";
 import { forgetForecast } from "./forecast.ts";
-import { ANSWER, type Input, NO_HAZARD, type Out, STATE } from "./records.ts";
+import { ANSWER, type Input, NO_HAZARD, type Out, STATE, WATCH } from "./records.ts";
 import { clearRows, PENDING, type State } from "./state.ts";
 import { answer, EVENT, REFUSED, refuse, tell } from "./tell.ts";
 
@@ -22,6 +22,7 @@ const NO_ANSWER = linkFactCode("no-answer");
 const CONTROLLER_RESET = 73;
 const BOARD_CHANGED_CAUSE = 82;
 const LINK_LOST = 83;
+const CUT_AT_OPEN = 88;
 const PERSON = 0;
 
 export function takeFact(state: State, input: Input, out: Out): void {
@@ -68,12 +69,19 @@ function connect(state: State, input: Input, out: Out): void {
   forgetSamples(state);
   if (state.state === STATE.offline) state.state = STATE.standby;
   tell(out, EVENT.connected, NO_HAZARD, input.factValue, 0);
+  // The line was asserted, or its one-shot unfed, from the port's opening on.
+  if (state.watch === WATCH.line || state.watch === WATCH.toggled) {
+    trip(state, out, CUT_AT_OPEN, Number.NaN, Number.NaN);
+  } else if (state.watch === WATCH.text && state.state === STATE.tripped) {
+    // Whether the text was ever heard is not known: it is sent again.
+    trip(state, out, state.cause, Number.NaN, Number.NaN);
+  }
 }
 
 function disconnect(state: State, out: Out): void {
   if (state.connected === 1) tell(out, EVENT.disconnected, NO_HAZARD, state.current_mA, 0);
   state.connected = 0;
-  if (state.state === STATE.standby) state.state = STATE.offline;
+  if (state.state === STATE.standby || state.watch === WATCH.only) state.state = STATE.offline;
   forgetSamples(state);
   endArming(state, out, REFUSED.offline, Number.NaN);
   endResetting(state, out, REFUSED.offline, Number.NaN);

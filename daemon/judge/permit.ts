@@ -3,8 +3,9 @@ import { inDoubt } from "./alarm.ts";
 import { assert } from "./assert.ts";
 import { target_mA } from "./cap.ts";
 import { isLit } from "./cut.ts";
-import { PERMIT_SPACING_ms, type Plan } from "./plan.ts";
-import type { Input, Out } from "./records.ts";
+import type { Plan } from "./plan.ts";
+import { PERMIT_SPACING_ms } from "./plan-parts.ts";
+import { type Input, type Out, STATE } from "./records.ts";
 import type { State } from "./state.ts";
 import { COUNT_DUST } from "./tables.ts";
 
@@ -66,4 +67,17 @@ function raiseAim(plan: Plan, state: State): void {
   const waits = (state.status & (STATUS.delay | STATUS.injected)) !== 0;
   const reach_mA = waits ? state.aim_mA : state.aim_mA + step_mA;
   state.aim_mA = Math.max(0, Math.min(target, reach_mA));
+}
+
+/**
+ * Feeds the one-shot of a watched bench with the sample just judged: from the same output as a
+ * permit, and with no current in it, since the current is set elsewhere.
+ */
+export function feedOneShot(plan: Plan, state: State, input: Input, out: Out): void {
+  if (state.state === STATE.tripped || input.newest === 0) return;
+  if (inDoubt(plan, state)) return;
+  assert(out.dark < 0, "a one-shot is not fed in a step that cuts");
+  out.permit = 1;
+  out.permitSeq = state.seq;
+  out.term_ticks = plan.term_ticks;
 }

@@ -1,8 +1,18 @@
-import { type Bench, HAZARD_IDS } from "../model/bench.ts";
-import type { Conversion, Divider } from "../model/conversion.ts";
+import type { Bench } from "../model/bench.ts";
 import { type Channel, channelNamed, type Manifest } from "../model/manifest.ts";
 import { formatQuantity } from "../model/quantities.ts";
-import { ROWS, WINDOW } from "./state.ts";
+import {
+  conversionOf,
+  countRange,
+  levelsOf,
+  PERMIT_SPACING_ms,
+  scaleOf,
+  shareOf,
+  termTicks,
+  timesOf,
+} from "./plan-parts.ts";
+import { WATCH } from "./records.ts";
+import { WINDOW } from "./state.ts";
 import {
   type CaseTables,
   type Curve,
@@ -10,6 +20,7 @@ import {
   type OutputTable,
   outputTable,
 } from "./tables.ts";
+import { compileWatched } from "./watch-plan.ts";
 
 /**
  * The plan: a bench file and what a controller said of itself, compiled into flat numbers and
@@ -35,6 +46,8 @@ export interface Share {
 
 export interface Plan {
   readonly builtIn: boolean;
+  /** WATCH of records.ts: none for a board that takes permits. */
+  readonly watch: number;
   readonly set: Scale;
   readonly current: Scale;
   readonly photodiode: Scale;
@@ -67,8 +80,6 @@ export type CompiledPlan =
   | { readonly ok: true; readonly plan: Plan }
   | { readonly ok: false; readonly problems: string[] };
 
-/** Least controller time between two permits, ms. */
-export const PERMIT_SPACING_ms = 50;
 /** A term holds at least this many sample periods, so that lost samples do not end light. */
 export const PERIODS_PER_TERM_MIN = 5;
 
@@ -80,6 +91,7 @@ const JUDGED = ["set", "current", "case", "photodiode"] as const;
  * @returns the plan, or every reason why this bench cannot be run on this controller, in words
  */
 export function compilePlan(bench: Bench, manifest: Manifest, curve: Curve): CompiledPlan {
+  if (bench.controller.stream !== undefined) return compileWatched(bench, manifest);
   const problems: string[] = [];
   const channels = JUDGED.map((name) => channelNamed(manifest, name));
   const [set, current, case_, photodiode] = channels;
@@ -108,6 +120,7 @@ export function compilePlan(bench: Bench, manifest: Manifest, curve: Curve): Com
     ok: true,
     plan: {
       builtIn: bench.controller.transport.kind === "built-in",
+      watch: WATCH.none,
       set: setScale,
       current: currentScale,
       photodiode: photodiodeScale,
@@ -125,54 +138,6 @@ export function compilePlan(bench: Bench, manifest: Manifest, curve: Curve): Com
     },
   };
 }
-
-const countRange = ({ count_min, count_max }: Channel) => ({ count_min, count_max });
-
-/** The bench file's conversion of a channel, or the manifest's own scale. */
-function conversionOf(bench: Bench, channel: Channel): Conversion {
-  const own = bench.conversions[channel.name];
-  if (own !== undefined) return own;
-  return { version: 0, law: { kind: "linear", perCount: channel.perCount, offset: 0 }, error: 0 };
-}
-
-function scaleOf(bench: Bench, channel: Channel, problems: string[]): Scale {
-  const { law, error } = conversionOf(bench, channel);
-  if (law.kind !== "linear") {
-    problems.push(
-      `Channel "${channel.name}" is given as a ${law.kind} sensor; the judge needs it linear.`,
-    );
-    return { channel: channel.index, perCount: 1, offset: 0, ...countRange(channel), error };
-  }
-  const { perCount, offset } = law;
-  if (!(perCount > 0)) {
-    problems.push(`Channel "${channel.name}" has ${perCount} a count; it must be above zero.`);
-  }
-  return { channel: channel.index, perCount, offset, ...countRange(channel), error };
-}
-
-function shareOf(conversion: Conversion): Share {
-  const { law } = conversion;
-  if (law.kind === "linear") return { perCount: Number.NaN, offset: Number.NaN };
-  const { full_counts, sensor }: Divider = law.divider;
-  return sensor === "to-ground"
-    ? { perCount: 1 / full_counts, offset: 0 }
-    : { perCount: -1 / full_counts, offset: 1 };
-}
-
-function timesOf(bench: Bench, manifest: Manifest) {
-  const period_ms = 1000 / manifest.rate_perS;
-  return {
-    tick_ms: manifest.tick_us / 1000,
-    period_ms,
-    fall_ms: manifest.fall_ms,
-    window_ms: manifest.fall_ms + PERMIT_SPACING_ms + 2 * period_ms,
-    term_ms: bench.controller.term_ms,
-    term_ticks: termTicks(bench, manifest),
-  };
-}
-
-const termTicks = (bench: Bench, manifest: Manifest): number =>
-  Math.floor((bench.controller.term_ms * 1000) / manifest.tick_us);
 
 const ms = (value: number): string => formatQuantity("time", value);
 
@@ -247,23 +212,4 @@ function setProblems(bench: Bench, manifest: Manifest, channel: Channel, scale: 
     problems.push(`Channel "set" is in ${channel.unit}; the judge needs it in mA.`);
   }
   return problems;
-}
-
-function levelsOf(bench: Bench) {
-  const levels = {
-    warn: new Float64Array(ROWS),
-    warnDelay_ms: new Float64Array(ROWS),
-    trip: new Float64Array(ROWS),
-    tripDelay_ms: new Float64Array(ROWS),
-    deadband: new Float64Array(ROWS),
-  };
-  for (const [i, id] of HAZARD_IDS.entries()) {
-    const row = bench.hazards[id];
-    levels.warn[i] = row.warn ?? Number.NaN;
-    levels.warnDelay_ms[i] = row.warnDelay_ms;
-    levels.trip[i] = row.trip ?? Number.NaN;
-    levels.tripDelay_ms[i] = row.tripDelay_ms;
-    levels.deadband[i] = row.deadband;
-  }
-  return levels;
 }

@@ -81,6 +81,9 @@ export interface Input {
 export const STATES = ["offline", "standby", "armed", "emitting", "tripped"] as const;
 export const STATE = { offline: 0, standby: 1, armed: 2, emitting: 3, tripped: 4 } as const;
 
+/** How a bench is watched: not at all (it takes permits), with no way to cut, or with one. */
+export const WATCH = { none: 0, only: 1, text: 2, line: 3, toggled: 4 } as const;
+
 export const FLAG = {
   capped: 1,
   winding: 2,
@@ -89,6 +92,8 @@ export const FLAG = {
   watchOnly: 16,
   delay: 32,
   unheard: 64,
+  /** Watched, and a cut-off is named: a trip cuts, but no permit is needed for light. */
+  cutOff: 128,
 };
 
 /** Where everything stands after a step: what pages, status and the record's derived channels show. */

@@ -13,6 +13,7 @@ import {
   type Out,
   REQUEST,
   STATE,
+  WATCH,
 } from "./records.ts";
 import { PENDING, type State } from "./state.ts";
 import { answer, EVENT, REFUSED, refuse, tell } from "./tell.ts";
@@ -51,8 +52,13 @@ export function answerRequest(plan: Plan | null, state: State, input: Input, out
   }
 }
 
-/** Dark is never refused, by anybody, in any state. */
+/** Dark is never refused, but where nothing can cut: a "done" would then be a lie. */
 function askDark(state: State, input: Input, out: Out, cause: number): void {
+  if (state.watch === WATCH.only) {
+    if (input.request === REQUEST.stop) answer(out, input.requestId, ANSWER.done, 0);
+    else refuse(out, input.requestId, REFUSED["watch-only"], Number.NaN);
+    return;
+  }
   if (state.arming === PENDING.waiting) state.arming = PENDING.cancelled;
   goDark(state, out, cause);
   answer(out, input.requestId, ANSWER.done, 0);
@@ -74,6 +80,7 @@ function askArm(plan: Plan | null, state: State, input: Input, out: Out): void {
 
 /** The first reason against arming, in the order in which a person would mend them. */
 function whyNotArm(plan: Plan | null, state: State, input: Input): number {
+  if (state.watch !== WATCH.none) return REFUSED["watch-only"];
   if (input.asker === SCRIPTED && plan?.builtIn !== true) return REFUSED["not-built-in"];
   if (state.state === STATE.tripped) return REFUSED.tripped;
   if (plan === null || state.connected === 0 || state.sampled === 0) return REFUSED.offline;
@@ -125,6 +132,7 @@ function askSet(plan: Plan | null, state: State, input: Input, out: Out): void {
 }
 
 function whyNotSet(plan: Plan | null, state: State, input: Input): number {
+  if (state.watch !== WATCH.none) return REFUSED["watch-only"];
   if (input.asker === SCRIPTED && plan?.builtIn !== true) return REFUSED["not-built-in"];
   if (state.state === STATE.tripped) return REFUSED.tripped;
   if (state.state === STATE.offline) return REFUSED.offline;
@@ -143,6 +151,11 @@ function askReset(plan: Plan | null, state: State, input: Input, out: Out): void
   state.resettingId = input.requestId;
   state.resettingUntil_mono_ms = input.now_ms + EXCHANGE_ms;
   if ((state.status & STATUS.tripped) === 0) {
+    if (state.watch !== WATCH.none) {
+      // The cut-off is let go together with the latch.
+      out.order = ORDER.reset;
+      out.orderValue = state.cause;
+    }
     clearLatch(state, out);
     return;
   }

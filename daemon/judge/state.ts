@@ -58,6 +58,9 @@ const NUMBERS = {
   ackSeq: -1,
   ackAge_ms: Number.NaN,
 
+  /** How the bench is watched (WATCH of watch-plan.ts); 0 for a board that takes permits. */
+  watch: 0,
+
   // Its readings.
   case_counts: 0,
   case_degC: Number.NaN,

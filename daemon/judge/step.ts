@@ -10,10 +10,11 @@ import { takeForecast } from "./forecast.ts";
 import { grantPermit } from "./permit.ts";
 import type { Plan } from "./plan.ts";
 import { takeClock, takeMedian, takeReadings } from "./reading.ts";
-import { ANSWER, FLAG, INPUT, type Input, ORDER, type Out, STATE } from "./records.ts";
+import { ANSWER, FLAG, INPUT, type Input, ORDER, type Out, STATE, WATCH } from "./records.ts";
 import { answerRequest } from "./requests.ts";
 import type { State } from "./state.ts";
 import { EVENT, tell } from "./tell.ts";
+import { judgeWatched } from "./watch.ts";
 
 /**
  * The supervising step: one input judged, one outcome. It reads no clock, does no I/O and allocates
@@ -30,6 +31,7 @@ import { EVENT, tell } from "./tell.ts";
 export function step(plan: Plan | null, state: State, input: Input, out: Out): void {
   clearOut(out);
   state.now_mono_ms = input.now_ms;
+  if (plan !== null) state.watch = plan.watch;
   if (state.untold === 1) tellRestored(state, out);
   if (input.kind === INPUT.sample) {
     if (plan !== null && state.connected === 1) judgeSample(plan, state, input, out);
@@ -53,6 +55,10 @@ function judgeSample(plan: Plan, state: State, input: Input, out: Out): void {
   takeCorridor(plan, state);
   takeMedian(state);
   takeWindow(plan, state);
+  if (plan.watch !== WATCH.none) {
+    judgeWatched(plan, state, input, out);
+    return;
+  }
 
   followBoard(state, out);
   takeDarkness(state);
@@ -96,8 +102,9 @@ function show(state: State, out: Out): void {
   view.state = state.state;
   view.flags = flagsOf(state);
   view.cause = state.cause;
-  view.asked_mA = lit ? state.asked_mA : Number.NaN;
-  view.aim_mA = lit ? state.aim_mA : Number.NaN;
+  const asks = lit && state.watch === WATCH.none;
+  view.asked_mA = asks ? state.asked_mA : Number.NaN;
+  view.aim_mA = asks ? state.aim_mA : Number.NaN;
   view.current_mA = state.current_mA;
   view.case_degC = state.case_degC;
   view.output_mW = state.output_mW;
@@ -114,5 +121,10 @@ function flagsOf(state: State): number {
   const held = state.capped === 1 && isLit(state) ? FLAG.capped : 0;
   const delay = isLit(state) && (state.status & STATUS.delay) !== 0 ? FLAG.delay : 0;
   const unheard = state.state === STATE.tripped && state.connected === 0 ? FLAG.unheard : 0;
-  return held | delay | unheard;
+  return held | delay | unheard | watchFlag(state);
+}
+
+function watchFlag(state: State): number {
+  if (state.watch === WATCH.none) return 0;
+  return state.watch === WATCH.only ? FLAG.watchOnly : FLAG.cutOff;
 }

@@ -14,6 +14,7 @@ import {
   STATE,
   type View,
 } from "./records.ts";
+import { isWatched, watchedNext, watchedSentence } from "./watch-words.ts";
 
 /**
  * What the judge says, in sentences: present tense, subject first, cause named, numbers with their
@@ -52,6 +53,8 @@ const ahead = (s: number): string =>
 /** What the bench does now, in one sentence. `age_ms` is the time since its last sample. */
 export function stateSentence(names: SentenceNames, view: View, age_ms: number): string {
   const { bench } = names;
+  const heard = age_ms < SILENT_ms && view.state !== STATE.offline;
+  if (isWatched(view) && heard) return watchedSentence(bench, view);
   if (view.state === STATE.tripped) return trippedSentence(bench, view);
   if (view.state === STATE.offline) return `No controller answers for ${bench}.`;
   if (age_ms >= SILENT_ms) {
@@ -98,6 +101,8 @@ const makerWords = (view: View): string => MAKER_WORDS[makerOf(view.maker)];
 
 /** What comes next, or what to do, in one or two sentences. */
 export function nextSentence(names: SentenceNames, view: View, age_ms: number): string {
+  const heard = age_ms < SILENT_ms && view.state !== STATE.offline;
+  if (isWatched(view) && heard) return watchedNext(view);
   if (view.state === STATE.tripped) return afterTrip(view);
   if (view.state === STATE.offline)
     return "It is being looked for; when it answers it starts dark.";
@@ -174,6 +179,11 @@ export function eventWords(kind: EventKind, hazard: number, a: number, b: number
         words: `${capital(warningReason(hazard))}: ${against(hazard, a, b)}.`,
         weight: "warn",
       };
+    case "unenforced":
+      return {
+        words: `${capital(causeOf(hazard).words)}${tripNumbers(hazard, a, b)}. Nothing here cuts it.`,
+        weight: "trip",
+      };
     case "warning-over":
       return {
         words: `No longer: ${warningReason(hazard)}${overNumber(hazard, a)}.`,
@@ -196,6 +206,10 @@ function calmWords(kind: EventKind, hazard: number, a: number, b: number): strin
       return a > 0 ? `Armed for ${amps(a)}.` : "Back at zero current, still armed.";
     case "emitting":
       return `Light: ${amps(a)} asked, the case at ${degrees(b)}.`;
+    case "light-seen":
+      return `Current flows: ${amps(a)}.`;
+    case "light-gone":
+      return "No current flows any more.";
     case "dark":
       return `Dark: ${causeOf(hazard).words}.`;
     case "reset":
@@ -280,7 +294,7 @@ const REASONS: Readonly<Record<Refusal, string>> = {
   busy: "another exchange with the board is under way",
   board: "the board refuses",
   "wrong-cause": "another cause stands",
-  "watch-only": "this bench is only watched",
+  "watch-only": "this bench is watched: its controller takes no orders for light from here",
   "not-built-in": "the scripted person may act on the built-in bench only",
   "no-answer": "the board does not answer",
   "went-dark": "dark was asked for meanwhile",
@@ -298,6 +312,7 @@ const ADVICE: Partial<Record<Refusal, string>> = {
   "no-curve": "Wait until the curve is loaded, or reconnect.",
   sensor: "Look at the case sensor and its lead.",
   "case-warm": "Let it cool.",
+  "watch-only": "Use its own controls, its key or its supply.",
   "needs-hand": "Press the button or move the key at the bench, then arm within a minute.",
   lockout: "The board's own lines tell why.",
   busy: "Wait a second and ask again.",

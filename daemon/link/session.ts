@@ -105,6 +105,11 @@ export class LinkSession {
     this.queue.fact("port-closed", 0, why);
   }
 
+  /** Whether a line brings a sample: only the newest one of a batch may earn a permit. */
+  brings(line: string): boolean {
+    return line.startsWith("<sample ");
+  }
+
   /** One received line without its end, and when it was read. */
   feed(line: string, now: Mono_ms): void {
     if (this.phase === "closed") return;

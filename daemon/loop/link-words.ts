@@ -46,6 +46,9 @@ function noAnswerWords(tries: number, verb: string): string {
   if (verb === "who") {
     return `Whatever is on this port does not say who it is, asked ${tries} times. Look whether it is the right port, at its baud rate, and whether the board has its firmware.`;
   }
+  if (verb === "stream") {
+    return "Lines come, or none do, but none fits the stream of the bench file. Run beamsitter listen PORT --guess, and compare.";
+  }
   if (verb === "dark") {
     return `The board has not confirmed dark after ${tries} orders. Go and look.`;
   }
@@ -54,7 +57,7 @@ function noAnswerWords(tries: number, verb: string): string {
 
 /** Whether this fact means that the board cannot be used until somebody does something. */
 export function standsInTheWay(fact: LinkFact, text: string): boolean {
-  if (fact === "no-answer") return text === "who";
+  if (fact === "no-answer") return text === "who" || text === "stream";
   return fact === "wrong-version" || fact === "not-introduced" || fact === "curve-failed";
 }
 

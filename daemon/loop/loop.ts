@@ -12,7 +12,8 @@ import {
 import { newInput, newOut, newState, restoreLatch, type State } from "../judge/state.ts";
 import { step } from "../judge/step.ts";
 import { brokenLines } from "../link/counts.ts";
-import { type CurvePoints, LinkSession } from "../link/session.ts";
+import { PlainSession } from "../link/plain/session.ts";
+import type { CurvePoints } from "../link/session.ts";
 import type { Bench } from "../model/bench.ts";
 import { LINK_FACTS, type LinkFact } from "../model/link-fact.ts";
 import type { Manifest } from "../model/manifest.ts";
@@ -21,6 +22,7 @@ import type { Ring } from "../model/ring.ts";
 import type { Mono_ms } from "../model/times.ts";
 import type { LoopPorts } from "./ports.ts";
 import { writeRow } from "./row.ts";
+import { type Session, sessionFor } from "./sessions.ts";
 import { Telling } from "./telling.ts";
 
 /** One received line and the moment it was read. */
@@ -37,7 +39,7 @@ export interface Received {
  * A sample comes in at `receive`, is judged in `#judge`, and light is cut in `#carryOut`, first line.
  */
 export class Loop {
-  readonly session: LinkSession;
+  readonly session: Session;
   readonly state: State;
   readonly out: Out;
   readonly telling: Telling;
@@ -66,10 +68,8 @@ export class Loop {
     this.out = newOut();
     this.state = newState();
     if (latch !== null) restoreLatch(this.state, latch.cause, latch.lit);
-    this.session = new LinkSession({
-      serial: latch !== null && latch.serial !== "" ? latch.serial : bench.controller.serial,
-      curve: (manifest) => this.#curveFor(manifest),
-    });
+    const serial = latch !== null && latch.serial !== "" ? latch.serial : bench.controller.serial;
+    this.session = sessionFor(bench, serial, (manifest) => this.#curveFor(manifest));
     this.telling = new Telling(bench.name, ports);
   }
 
@@ -98,7 +98,7 @@ export class Loop {
   receive(lines: readonly Received[]): void {
     let newest = -1;
     for (let i = lines.length - 1; i >= 0 && newest < 0; i--) {
-      if (lines[i]?.line.startsWith("<sample ") === true) newest = i;
+      if (this.session.brings(lines[i]?.line ?? "")) newest = i;
     }
     for (let i = 0; i < lines.length; i++) {
       const received = lines[i];
@@ -136,6 +136,13 @@ export class Loop {
     this.#drainLink(now);
   }
 
+  /** Dark past the judge: the last act after a defect of ours. */
+  emergency(cause: number): void {
+    this.session.dark(cause);
+    this.#putLevel();
+    this.#sendQueued();
+  }
+
   /** Takes a changed bench file into use. Only while dark: the caller has seen to that. */
   adopt(bench: Bench, benchText: string, now: Mono_ms): void {
     this.bench = bench;
@@ -166,6 +173,7 @@ export class Loop {
   }
 
   #drainLink(now: Mono_ms): void {
+    this.#putLevel();
     for (let item = this.session.take(); item !== null; item = this.session.take()) {
       switch (item.kind) {
         case "send":
@@ -250,6 +258,14 @@ export class Loop {
     }
     if (out.order === ORDER.arm) this.session.arm();
     else if (out.order === ORDER.reset) this.session.reset(out.orderValue);
+    this.#putLevel();
+  }
+
+  /** A modem line that cuts takes its level before anything else leaves. */
+  #putLevel(): void {
+    if (!(this.session instanceof PlainSession)) return;
+    const order = this.session.takeLevel();
+    if (order !== null) this.#ports.level?.(order);
   }
 
   /** Lines of the link leave at once; samples and facts wait for their turn in `#drainLink`. */

@@ -3,6 +3,7 @@ import type { Bench } from "../model/bench.ts";
 import type { BenchEvent } from "../model/event.ts";
 import type { Manifest } from "../model/manifest.ts";
 import type { ToRecorder } from "../model/record-messages.ts";
+import type { LevelOrder } from "../model/stream.ts";
 import type { Mono_ms, Wall_ms } from "../model/times.ts";
 
 /** The board's table: raw case counts ascending, and the current allowed there in set counts. */
@@ -20,6 +21,8 @@ export interface LoopPorts {
   wall(): Wall_ms;
   /** Puts one line (with its end) on the wire; false where it could not be sent. */
   write(line: string): boolean;
+  /** Puts a modem line at a level, where the bench's cut-off is one. */
+  level?(order: LevelOrder): void;
   /** Whether everything written before has left: a permit waits for that, dark does not. */
   drained(): boolean;
   record(message: ToRecorder): void;

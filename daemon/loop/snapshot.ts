@@ -6,6 +6,7 @@ import type { Bench } from "../model/bench.ts";
 import { causeOf } from "../model/cause.ts";
 import { MAKER_WORDS, makerOf } from "../model/ceiling.ts";
 import { formatQuantity } from "../model/quantities.ts";
+import { enforcementOf, enforcementWords } from "../model/stream.ts";
 import { linkWords } from "./link-words.ts";
 import type { Loop } from "./loop.ts";
 
@@ -53,7 +54,9 @@ export function snapshotOf(loop: Loop, beside: Beside): Snapshot {
     capped: (view.flags & FLAG.capped) !== 0,
     // Not a number until the judge has met a board.
     delayLeft_ms: Math.max(0, known(view.delayLeft_ms) ?? 0),
-    watchOnly: (view.flags & FLAG.watchOnly) !== 0,
+    watchOnly: enforcementOf(bench.controller.stream) === "none",
+    enforcement: enforcementOf(bench.controller.stream),
+    enforced: enforcementWords(bench.controller.stream),
     builtIn: bench.controller.transport.kind === "built-in",
     hand: loop.session.manifest !== null && (loop.session.sample.status & (1 << 8)) !== 0,
     ...corridorOf(view),

@@ -1,5 +1,5 @@
 import type { EventLine } from "../control/api.ts";
-import { type Input, NO_HAZARD, type Out, STATE, STATES } from "../judge/records.ts";
+import { FLAG, type Input, NO_HAZARD, type Out, STATE, STATES } from "../judge/records.ts";
 import { eventWords } from "../judge/words.ts";
 import { HAZARD_IDS } from "../model/bench.ts";
 import { causeOf } from "../model/cause.ts";
@@ -73,7 +73,7 @@ export class Telling {
       this.#state = out.view.state;
       this.since = this.#ports.wall();
     }
-    const session = sessionOf(out.view.state, manifest !== null);
+    const session = sessionOf(out.view.state, out.view.flags, manifest !== null);
     if (session === this.#session) return;
     this.#session = session;
     this.#ports.record({ kind: "session", ringRow: rows, session, at: this.#ports.wall() });
@@ -86,7 +86,8 @@ export class Telling {
     const b = out.eventB[i] as number;
     const told = eventWords(kind, hazard, a, b);
     const id = hazardId(hazard);
-    if (kind === "warning") this.warnings.set(id, { words: told.words, since: this.#ports.wall() });
+    if (kind === "warning" || kind === "unenforced")
+      this.warnings.set(id, { words: told.words, since: this.#ports.wall() });
     if (kind === "warning-over") this.warnings.delete(id);
     this.say(kind, id, told.words, told.weight, input, a, b);
   }
@@ -118,9 +119,12 @@ export class Telling {
   }
 }
 
+const WATCHED = FLAG.watchOnly | FLAG.cutOff;
+
 /** Which kind of session a state belongs to; armed to dark is one, dark while connected another. */
-function sessionOf(state: number, connected: boolean): SessionKind | "end" {
+function sessionOf(state: number, flags: number, connected: boolean): SessionKind | "end" {
   const name = STATES[state];
+  if ((flags & WATCHED) !== 0) return connected && name !== "offline" ? "watched" : "end";
   if (name === "armed" || name === "emitting") return "lit";
   return connected && name !== "offline" ? "dark" : "end";
 }

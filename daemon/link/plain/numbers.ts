@@ -1,7 +1,8 @@
 /** Numbers as strange firmware prints them. Nothing here throws, whatever the text. */
 
 /** What boards print where they have no reading. */
-const NO_READING = /^(?:[+-]?nan|[+-]?inf(?:inity)?|ovf|over|open|short|err(?:or)?|null|n\/?a|-+|\?+)$/i;
+const NO_READING =
+  /^(?:[+-]?nan|[+-]?inf(?:inity)?|ovf|over|open|short|err(?:or)?|null|n\/?a|-+|\?+)$/i;
 /** A unit may stand behind a number, parted from it or not. */
 const UNIT = "[A-Za-z°µμΩ%/]{0,8}";
 
@@ -53,4 +54,7 @@ export function isDamaged(line: string): boolean {
 
 /** Bytes of UTF-8 that came as single characters: the signs that stand in units, mended. */
 export const mendSigns = (line: string): string =>
-  line.replaceAll("\u00c2\u00b0", "°").replaceAll("\u00c2\u00b5", "µ").replaceAll("\u00ce\u00a9", "Ω");
+  line
+    .replaceAll("\u00c2\u00b0", "°")
+    .replaceAll("\u00c2\u00b5", "µ")
+    .replaceAll("\u00ce\u00a9", "Ω");

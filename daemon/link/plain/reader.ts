@@ -9,7 +9,7 @@ export type LineKind = "values" | "some" | "text" | "half" | "broken";
 
 /** Stands before and after a key, so that T is not found in PT. */
 const BEFORE = "(?<![A-Za-z0-9_])";
-const escape = (text: string): string => text.replace(/[.*+?^${}()|[\]\\]/g, "\\$&");
+const literally = (text: string): string => text.replace(/[.*+?^${}()|[\]\\]/g, "\\$&");
 
 /**
  * Reads lines of one stream into one value a column. Values are printed numbers, not yet counts:
@@ -56,7 +56,7 @@ export class StreamReader {
     const value = `(${number}|[A-Za-z/?-]{1,8})`;
     const between =
       this.spec.format === "labelled" ? "[^0-9+\\-.,;]{0,24}?[\\s:=]" : "\\s*[=:]\\s*";
-    return new RegExp(`${BEFORE}${escape(name)}${between}${value}(?![\\d])`, "g");
+    return new RegExp(`${BEFORE}${literally(name)}${between}${value}(?![\\d])`, "g");
   }
 
   private readCells(line: string): LineKind {

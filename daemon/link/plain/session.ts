@@ -53,6 +53,7 @@ export class PlainSession {
   private readonly has: Uint8Array;
   private torn = true;
   private own_ms = Number.NaN;
+  private tick = Number.NEGATIVE_INFINITY;
 
   constructor(options: PlainOptions) {
     this.options = options;
@@ -147,9 +148,8 @@ export class PlainSession {
   }
 
   /** A person lets the cut-off go. */
-  reset(cause: number): void {
+  reset(_cause: number): void {
     this.cutOff.release();
-    this.queue.fact("reset-done", cause, "");
   }
 
   /** The judge refuses arming on a watched bench; nothing is begun here either. */
@@ -163,6 +163,7 @@ export class PlainSession {
   private forget(): void {
     this.manifest = null;
     this.own_ms = Number.NaN;
+    this.tick = Number.NEGATIVE_INFINITY;
     this.has.fill(0);
     this.silence.clear();
   }
@@ -215,7 +216,10 @@ export class PlainSession {
     let at_ms: number = now;
     if (time !== null) {
       at_ms = (values[columns.length] ?? Number.NaN) * time.unit_ms;
-      if (!Number.isFinite(at_ms)) return this.wasBroken(now);
+      if (!Number.isFinite(at_ms)) {
+        this.wasBroken(now);
+        return;
+      }
       if (at_ms < this.own_ms - BACK_ms) {
         this.restarted(2, `its time went back by ${Math.round((this.own_ms - at_ms) / 1000)} s`);
       }
@@ -241,7 +245,9 @@ export class PlainSession {
     const { sample } = this;
     this.counts.samples += 1;
     sample.seq = (sample.seq + 1) >>> 0;
-    sample.tick = Math.round(at_ms) % 4_294_967_296;
+    // Lines that were read at once, or a time in whole seconds, still come one after another.
+    this.tick = Math.max(Math.round(at_ms), this.tick + 1);
+    sample.tick = this.tick % 4_294_967_296;
     sample.status = STATUS_WATCHED;
     sample.conversions = sample.seq & 0xffff;
     for (const [i, column] of this.options.stream.columns.entries()) {
@@ -271,4 +277,3 @@ export class PlainSession {
     this.await();
   }
 }
-

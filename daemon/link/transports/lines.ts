@@ -16,6 +16,11 @@ export class LengthGuard {
   /** Bytes dropped since the start. */
   dropped = 0;
   private length = 0;
+  private readonly bytes_max: number;
+
+  constructor(bytes_max: number = LINE_BYTES_PASSED) {
+    this.bytes_max = bytes_max;
+  }
 
   /** What of a chunk may pass. The chunk itself is handed back where nothing is to be dropped. */
   pass(chunk: Uint8Array): Uint8Array {
@@ -25,7 +30,7 @@ export class LengthGuard {
     for (const byte of chunk) {
       if (byte === LF) this.length = 0;
       else this.length += 1;
-      if (this.length <= LINE_BYTES_PASSED) {
+      if (this.length <= this.bytes_max) {
         kept[n] = byte;
         n += 1;
       } else this.dropped += 1;
@@ -38,7 +43,7 @@ export class LengthGuard {
     let { length } = this;
     for (const byte of chunk) {
       length = byte === LF ? 0 : length + 1;
-      if (length > LINE_BYTES_PASSED) return false;
+      if (length > this.bytes_max) return false;
     }
     this.length = length;
     return true;
@@ -47,7 +52,12 @@ export class LengthGuard {
 
 /** The guard as a stream, to stand before a reader of lines. */
 export class GuardStream extends Transform {
-  readonly guard = new LengthGuard();
+  readonly guard: LengthGuard;
+
+  constructor(bytes_max?: number) {
+    super();
+    this.guard = new LengthGuard(bytes_max);
+  }
 
   override _transform(chunk: Buffer, _: BufferEncoding, done: TransformCallback): void {
     const passed = this.guard.pass(chunk);
@@ -64,12 +74,13 @@ export const withoutReturn = (line: string): string =>
  * guard and readline parser together, however the bytes are cut; empty lines are left out.
  */
 export class LineSplitter {
-  readonly guard = new LengthGuard();
+  readonly guard: LengthGuard;
   private rest = "";
   private readonly line: (line: string) => void;
 
-  constructor(line: (line: string) => void) {
+  constructor(line: (line: string) => void, bytes_max?: number) {
     this.line = line;
+    this.guard = new LengthGuard(bytes_max);
   }
 
   feed(chunk: Uint8Array): void {

@@ -1,3 +1,4 @@
+import type { LevelOrder } from "../../model/stream.ts";
 import type { Transport, TransportHandlers } from "./transport.ts";
 
 /** First pause before another connection is tried; doubled each time, up to the longest. */
@@ -53,6 +54,11 @@ export class Reconnect {
   /** Sends one line (with its end) if a connection stands; else it is dropped, never kept. */
   write(line: string): boolean {
     return this.state === "open" && this.transport !== null && this.transport.write(line);
+  }
+
+  /** Puts a modem line at a level, if a connection stands that has one. */
+  level(order: LevelOrder): void {
+    if (this.state === "open") this.transport?.level?.(order);
   }
 
   /** Whether a connection stands and everything written to it has left. */

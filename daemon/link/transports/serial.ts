@@ -1,6 +1,7 @@
 import { ReadlineParser } from "@serialport/parser-readline";
 import { SerialPort } from "serialport";
-import { GuardStream, withoutReturn } from "./lines.ts";
+import type { LevelOrder } from "../../model/stream.ts";
+import { GuardStream, LINE_BYTES_PASSED, withoutReturn } from "./lines.ts";
 import { Once } from "./once.ts";
 import { openFailureWords } from "./serial-words.ts";
 import { SilenceWatch, silenceWords } from "./silence-watch.ts";
@@ -17,6 +18,10 @@ export interface SerialOptions {
   readonly baud: number;
   /** Silence after which the port is given up, ms. */
   readonly silence_ms?: number;
+  /** Longest line, bytes; that of the line protocol where left out. */
+  readonly lineBytes_max?: number;
+  /** Keeps modem lines asserted when the port closes: one of them may be holding light off. */
+  readonly keepsLines?: boolean;
 }
 
 /**
@@ -28,6 +33,7 @@ export class SerialTransport implements Transport {
   readonly name: string;
   private readonly port: SerialPort;
   private readonly silence_ms: number;
+  private readonly lineBytes_max: number;
   private readonly once = new Once();
   private readonly watch = new SilenceWatch();
   private waiting = 0;
@@ -35,11 +41,24 @@ export class SerialTransport implements Transport {
   private unsent = false;
   private draining = false;
 
-  constructor({ path, baud, silence_ms = SILENCE_ms }: SerialOptions) {
+  constructor({
+    path,
+    baud,
+    silence_ms = SILENCE_ms,
+    lineBytes_max = LINE_BYTES_PASSED,
+    keepsLines = false,
+  }: SerialOptions) {
+    this.lineBytes_max = lineBytes_max;
     this.name = `${path} at ${baud} baud`;
     this.silence_ms = silence_ms;
     // The lock keeps other programs that ask for one off the port; a second host is refused by it.
-    this.port = new SerialPort({ path, baudRate: baud, autoOpen: false, lock: true });
+    this.port = new SerialPort({
+      path,
+      baudRate: baud,
+      autoOpen: false,
+      lock: true,
+      hupcl: !keepsLines,
+    });
   }
 
   open(handlers: TransportHandlers): void {
@@ -69,6 +88,16 @@ export class SerialTransport implements Transport {
     return true;
   }
 
+  /** The other line stays asserted, as opening the port left it. */
+  level({ line, asserted }: LevelOrder): void {
+    if (!this.once.isOpen || !this.port.isOpen) return;
+    const lines = line === "rts" ? { rts: asserted, dtr: true } : { rts: true, dtr: asserted };
+    this.port.set(lines, (error) => {
+      if (error !== null)
+        this.lost(`${this.name} has no line ${line.toUpperCase()}: ${error.message}`);
+    });
+  }
+
   get drained(): boolean {
     return this.once.isOpen && !this.unsent;
   }
@@ -78,7 +107,7 @@ export class SerialTransport implements Transport {
   }
 
   private stands(): void {
-    const guard = new GuardStream();
+    const guard = new GuardStream(this.lineBytes_max);
     const parser = new ReadlineParser({ delimiter: "\n", encoding: "latin1" });
     this.port.on("data", () => this.watch.heard());
     parser.on("data", (text: string) => {

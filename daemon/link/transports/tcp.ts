@@ -14,6 +14,8 @@ export interface TcpOptions {
   readonly port: number;
   /** Silence after which the connection is given up, ms; also the longest wait for it to stand. */
   readonly silence_ms?: number;
+  /** Longest line, bytes; that of the line protocol where left out. */
+  readonly lineBytes_max?: number;
 }
 
 const failureWords = (name: string, error: NodeJS.ErrnoException): string => {
@@ -54,7 +56,7 @@ export class TcpTransport implements Transport {
     const { host, port } = this.options;
     const socket = connect({ host, port, noDelay: true });
     this.socket = socket;
-    const lines = new LineSplitter((line) => this.once.line(line));
+    const lines = new LineSplitter((line) => this.once.line(line), this.options.lineBytes_max);
     // The wait for the connection is bounded by the same watch.
     this.watch.start(this.silence_ms, (ms) => this.lost(silenceWords(this.name, ms)));
     socket.on("connect", () => {

@@ -1,3 +1,5 @@
+import type { LevelOrder } from "../../model/stream.ts";
+
 /** What a transport tells. Each is called on the judging thread, and none may throw. */
 export interface TransportHandlers {
   /** The connection stands: lines can be written. Never called from within `open`. */
@@ -20,6 +22,8 @@ export interface Transport {
   write(line: string): boolean;
   /** Whether everything written before has left this computer, as far as it can be known. */
   readonly drained: boolean;
+  /** Puts a modem line at a level; only serial ports have such lines. */
+  level?(order: LevelOrder): void;
   /** Ends the connection at once. Safe at any time, and more than once. */
   close(): void;
 }
