@@ -238,13 +238,14 @@ export class Supervision {
     if (differences.length === 0) {
       return { ok: true, reason: "", words: "Nothing differs from the file in use.", lines: [] };
     }
-    const misfit = this.#misfit(bench, differences);
-    if (misfit !== null) return misfit;
     const { state } = this.snapshot();
     if (state === "armed" || state === "emitting") {
       const words = `${own.name} is ${state}; a bench file is adopted only while dark.`;
       return { ok: false, reason: "not-standby", words, lines: differences };
     }
+    // Only while dark: making a curve takes longer than a lit bench should wait.
+    const misfit = this.#misfit(bench, differences);
+    if (misfit !== null) return misfit;
     if (!confirm) return { ok: true, reason: "", words: "What would change:", lines: differences };
     this.loop.adopt(bench, text, now());
     this.#options.adopted(bench);
