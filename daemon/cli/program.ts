@@ -16,6 +16,7 @@ import { portsCommand } from "./ports.ts";
 import { resetCommand } from "./reset.ts";
 import { runCommand } from "./run.ts";
 import { EXIT, Trouble } from "./say.ts";
+import { sessionsCommand } from "./sessions.ts";
 import { setCommand } from "./set.ts";
 import { statusCommand } from "./status.ts";
 
@@ -40,6 +41,8 @@ export function makeProgram(): Command {
       "afterAll",
       "\nExit codes: 0 done, 1 refused or a problem found, 2 command line, 3 no daemon, 4 port, folder or file.",
     )
+    // An option behind a command's name is that command's, also where the command has parts.
+    .enablePositionalOptions()
     .exitOverride();
   for (const command of [
     initCommand(),
@@ -56,12 +59,21 @@ export function makeProgram(): Command {
     portsCommand(),
     listenCommand(),
     exportCommand(),
+    sessionsCommand(),
   ]) {
-    refuseRepeats(command);
-    const help = `(beamsitter ${command.name()} --help explains it; nothing was changed)`;
-    program.addCommand(command.showHelpAfterError(help).exitOverride());
+    settle(command, command.name());
+    for (const part of command.commands) settle(part, `${command.name()} ${part.name()}`);
+    program.addCommand(command);
   }
   return program.showHelpAfterError("(beamsitter --help lists the commands)");
+}
+
+/** What holds for every command, and for the parts of one that has parts. */
+function settle(command: Command, name: string): void {
+  refuseRepeats(command);
+  command
+    .showHelpAfterError(`(beamsitter ${name} --help explains it; nothing was changed)`)
+    .exitOverride();
 }
 
 /** The version of this package, as its own file says. */

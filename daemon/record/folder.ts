@@ -114,9 +114,10 @@ export function closeWritten(db: Database.Database): void {
   }
 }
 
-/** Opens the record for reading only; never makes or changes anything. */
+/** Opens a record, or a pack of one session, for reading only; never makes or changes anything. */
 export function openForReading(folder: string): Database.Database {
-  const file = recordFile(folder);
+  const isPack = statSync(folder, { throwIfNoEntry: false })?.isFile() === true;
+  const file = isPack ? folder : recordFile(folder);
   if (statSync(file, { throwIfNoEntry: false }) === undefined) {
     throw new RecordProblem(
       `${folder} is no data folder.`,

@@ -1,6 +1,8 @@
 import { type MessagePort, receiveMessageOnPort } from "node:worker_threads";
 import type { FromRecorder, ToRecorder } from "../model/record-messages.ts";
 import { Ring } from "../model/ring.ts";
+import { Keeper } from "./keeper.ts";
+import { KeeperSocket } from "./keeper-socket.ts";
 import { problemOf } from "./problem.ts";
 import { Recorder } from "./recorder.ts";
 
@@ -11,6 +13,7 @@ const LOOK_ms = 50;
 export function serve(port: MessagePort): void {
   let recorder: Recorder | null = null;
   let ring: Ring | null = null;
+  let socket: KeeperSocket | null = null;
   let timer: NodeJS.Timeout | undefined;
   let seen = 0;
   const tell = (message: FromRecorder): void => port.postMessage(message);
@@ -20,6 +23,8 @@ export function serve(port: MessagePort): void {
       recorder = new Recorder({ ...message, tell });
       ring = new Ring(message.ring);
       timer = setInterval(pump, LOOK_ms);
+      const keeper = new Keeper(recorder.store, message.bench);
+      socket = new KeeperSocket(keeper, message.folder);
       tell({ kind: "opened", lastEventId: recorder.lastEventId, latch: recorder.latchAtOpen });
     } catch (error) {
       const problem = problemOf(error, message.folder);
@@ -30,6 +35,7 @@ export function serve(port: MessagePort): void {
 
   const close = (): void => {
     clearInterval(timer);
+    socket?.close();
     recorder?.close();
     recorder = null;
     tell({ kind: "closed" });

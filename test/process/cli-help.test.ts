@@ -29,10 +29,13 @@ async function parsed(line: string[]): Promise<{ name: string; options: Record<s
   let reached = { name: "", options: {} };
   program.configureOutput({ writeErr: () => {} });
   for (const command of program.commands) {
-    command.configureOutput({ writeErr: () => {} });
-    command.action(() => {
-      reached = { name: command.name(), options: command.opts() };
-    });
+    // A command's parts are that command's too.
+    for (const part of [command, ...command.commands]) {
+      part.configureOutput({ writeErr: () => {} });
+      part.action(() => {
+        reached = { name: command.name(), options: part.opts() };
+      });
+    }
   }
   await program.parseAsync(line, { from: "user" });
   return reached;
@@ -41,7 +44,8 @@ async function parsed(line: string[]): Promise<{ name: string; options: Record<s
 describe("help", () => {
   test.each(COMMANDS)("every example of %s parses, and is that command's", async (name) => {
     const command = makeProgram().commands.find((c) => c.name() === name);
-    const examples = command === undefined ? [] : examplesOf(helpOf(command));
+    const parts = command === undefined ? [] : [command, ...command.commands];
+    const examples = parts.flatMap((part) => examplesOf(helpOf(part)));
     expect(examples.length).toBeGreaterThan(0);
     for (const example of examples) {
       expect((await parsed(argumentsOf(example))).name, example).toBe(name);
