@@ -228,9 +228,15 @@ export class Supervision {
   }
 
   #adopt(text: string, confirm: boolean): LoopAnswer {
+    const own = this.loop.bench;
+    const { state } = this.snapshot();
+    // Asked before the file is read: reading takes longer than the permits of a lit bench may wait.
+    if (state === "armed" || state === "emitting") {
+      const words = `${own.name} is ${state}; a bench file is adopted only while dark.`;
+      return { ok: false, reason: "not-standby", words };
+    }
     const { bench, lines } = this.#options.read(text);
     if (bench === null) return form("This file cannot be used:", lines);
-    const own = this.loop.bench;
     if (bench.name !== own.name) {
       return form(`This file describes "${bench.name}"; this daemon runs "${own.name}".`);
     }
@@ -238,12 +244,6 @@ export class Supervision {
     if (differences.length === 0) {
       return { ok: true, reason: "", words: "Nothing differs from the file in use.", lines: [] };
     }
-    const { state } = this.snapshot();
-    if (state === "armed" || state === "emitting") {
-      const words = `${own.name} is ${state}; a bench file is adopted only while dark.`;
-      return { ok: false, reason: "not-standby", words, lines: differences };
-    }
-    // Only while dark: making a curve takes longer than a lit bench should wait.
     const misfit = this.#misfit(bench, differences);
     if (misfit !== null) return misfit;
     if (!confirm) return { ok: true, reason: "", words: "What would change:", lines: differences };
