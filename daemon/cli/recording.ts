@@ -3,6 +3,7 @@ import type { Bench } from "../model/bench.ts";
 import type { Ring } from "../model/ring.ts";
 import { RecorderClient } from "../record/client.ts";
 import { RecordProblem } from "../record/problem.ts";
+import { SecondHomeClient } from "../record/second-home-client.ts";
 import { Trouble } from "./say.ts";
 
 /** The recorder of a running daemon, open. */
@@ -40,4 +41,21 @@ export async function startRecorder(
     }
     throw error;
   }
+}
+
+/**
+ * Starts writing the record to the server that the bench file names; null where it names none.
+ * `say` hears each change: what stands in the way, and that all is well again.
+ */
+export function startSecondHome(
+  folder: string,
+  bench: Bench,
+  say: (words: string, weight: "warn" | "calm") => void,
+): SecondHomeClient | null {
+  const { influx } = bench.record;
+  if (influx === null) return null;
+  return new SecondHomeClient(folder, influx, ({ words }) => {
+    if (words !== "") say(words, "warn");
+    else say(`The record reaches ${influx.url} again.`, "calm");
+  });
 }

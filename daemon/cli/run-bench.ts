@@ -13,7 +13,7 @@ import { addressTrouble, darkHosts, wantPort } from "./addresses.ts";
 import { loadBench } from "./bench-text.ts";
 import { DeskProcess } from "./desk-process.ts";
 import { BY_PERSON, Ending, HOST_DEFECT } from "./ending.ts";
-import { type Recording, startRecorder } from "./recording.ts";
+import { type Recording, startRecorder, startSecondHome } from "./recording.ts";
 import { codeOf, resetWords, Trouble } from "./say.ts";
 import { Telling } from "./telling.ts";
 import { transportFor } from "./transports.ts";
@@ -69,6 +69,9 @@ export async function runBench(options: RunOptions): Promise<void> {
   const parts: Parts = { bench, ring, recording, socket, folder, telling, end, desk: null };
   const supervision = await startSupervision(parts, options);
   end.onDefect(() => supervision.emergency(HOST_DEFECT));
+  const secondHome = startSecondHome(folder, bench, (words, weight) =>
+    supervision.loop.telling.say("record", "", words, weight, null, 0, 0),
+  );
   try {
     parts.desk = await startDesk(parts, supervision, host, options.port);
     const scripted = bench.controller.transport.kind === "built-in" && !options.stayDark;
@@ -83,6 +86,7 @@ export async function runBench(options: RunOptions): Promise<void> {
     removeNotice(bench.name);
     rmSync(socket, { force: true });
     await Promise.race([recording.client.close(), pause(CLOSE_ms_MAX)]);
+    await secondHome?.close();
     await until(SHOWN_ms_MAX, () => telling.isShown);
     telling.close();
   }

@@ -59,24 +59,29 @@ export class ChunkIndex {
   /** Opens a chunk's samples; says which one is damaged and why, where it is. */
   open(chunk: Chunk): Block | { readonly fault: string } {
     const stored = this.#tails.get(chunk.id) ?? this.#samples.get(chunk.id);
-    return opened(stored as Stored | undefined, `block ${chunk.id}`);
+    return openStored(stored as Stored | undefined, `block ${chunk.id}`);
   }
 
   /** Opens a block's one-second rollup; null for a chunk of the tail. */
   openRollup(chunk: Chunk): Block | { readonly fault: string } | null {
     if (chunk.id < 0) return null;
     const stored = this.#rollup.get(chunk.id);
-    return opened(stored as Stored | undefined, `the rollup of block ${chunk.id}`);
+    return openStored(stored as Stored | undefined, `the rollup of block ${chunk.id}`);
   }
 }
 
-interface Stored {
+/** Bytes of a chunk as they are stored. */
+export interface Stored {
   readonly codec: number;
   readonly crc: number;
   readonly blob: Uint8Array;
 }
 
-function opened(stored: Stored | undefined, name: string): Block | { readonly fault: string } {
+/** Opens stored bytes; a fault names the chunk by `name`. */
+export function openStored(
+  stored: Stored | undefined,
+  name: string,
+): Block | { readonly fault: string } {
   if (stored === undefined) return { fault: `${name} is missing` };
   const block = Block.open(stored.codec, stored.crc, stored.blob);
   return "fault" in block ? { fault: `${name} cannot be read: ${block.fault}` } : block;

@@ -28,6 +28,10 @@ const withoutCompiling = COMPILING.flatMap((file) => ["--exclude", file]);
 const COMPILERS = ["gcc", "make"];
 const AVR = ["gcc-avr", "avr-libc", "binutils-avr", "libsimavr-dev", "libelf-dev"];
 
+/** Tests that run a real time-series server; they make a suite of their own. */
+const SERVERS = ["influx-outage", "influx-victoria"].map((name) => `test/process/${name}.test.ts`);
+const withoutServers = SERVERS.flatMap((file) => ["--exclude", file]);
+
 /**
  * Every suite: what it covers in words, the system packages it cannot do without, and its steps.
  * A suite whose packages are missing is named as not tested.
@@ -59,7 +63,13 @@ export const SUITES = [
     name: "process",
     covers: "the daemon and its commands as processes",
     needs: [],
-    steps: () => [vitest("process tests", "process", "test/process")],
+    steps: () => [vitest("process tests", "process", "test/process", ...withoutServers)],
+  },
+  {
+    name: "second home",
+    covers: "the record at a real InfluxDB and a real VictoriaMetrics",
+    needs: ["influxdb", "victoria-metrics", "openssl"],
+    steps: () => [vitest("tests of the second home", "process", ...SERVERS)],
   },
   {
     name: "hardware",

@@ -26,6 +26,9 @@ const PACKAGES = {
   "lld-14": program("wasm-ld-14"),
   chromium: program("chromium", "chromium-browser", "google-chrome"),
   socat: program("socat"),
+  influxdb: program("influxd"),
+  "victoria-metrics": program("victoria-metrics"),
+  openssl: program("openssl"),
 };
 
 const missingNow = () => Object.keys(PACKAGES).filter((name) => !PACKAGES[name]());

@@ -52,7 +52,7 @@ export const ROOMS_TABLE: readonly Room[] = [
   {
     path: "daemon/record",
     rooms: [MODEL, "daemon/judge/records.ts", "daemon/paths.ts"],
-    packages: ["node:*", "better-sqlite3"],
+    packages: ["node:*", "better-sqlite3", "influx"],
   },
   {
     path: "daemon/desk",
