@@ -1,5 +1,7 @@
 import { z } from "zod";
 import { EventLine, Snapshot, SwitchAnswer } from "../control/api.ts";
+import { EPOCH_PARTS } from "../model/epoch.ts";
+import { STREAM_FORMATS } from "../model/stream.ts";
 
 /**
  * What each command prints with `--json`. A command prints through its schema (`printJson`), so that
@@ -42,6 +44,35 @@ export const Initiated = z.strictObject({
   hints: z.number().int(),
   next: z.array(z.string()),
 });
+
+/** change --list: changes by hand, oldest first. */
+export const Epochs = z.array(
+  z.strictObject({
+    id: z.number().int(),
+    bench: z.string(),
+    part: z.enum(EPOCH_PARTS),
+    at: z.number(),
+    serial: z.string(),
+    note: z.string(),
+    who: z.string(),
+    values: z.record(z.string(), z.string()),
+  }),
+);
+
+/** reading --list: readings of witnesses, oldest first. */
+export const Readings = z.array(
+  z.strictObject({
+    id: z.number().int(),
+    bench: z.string(),
+    name: z.string(),
+    at: z.number(),
+    value: z.number(),
+    unit: z.string(),
+    typed: z.boolean(),
+    who: z.string(),
+    note: z.string(),
+  }),
+);
 
 /** dark: which way each bench was reached. */
 export const Darkened = z.strictObject({
@@ -89,6 +120,22 @@ export const Sessions = z.array(
 
 /** listen: one object a line. */
 export const Heard = z.strictObject({ line: z.string(), broken: z.string().nullable() });
+
+/** listen --guess: what a stream probably is; `piece` is a section of a bench file. */
+export const Guessed = z.strictObject({
+  baud: z.number().int(),
+  format: z.enum(STREAM_FORMATS).nullable(),
+  columns: z.array(
+    z.strictObject({
+      name: z.string(),
+      channel: z.string(),
+      unit: z.string(),
+      confidence: z.number(),
+    }),
+  ),
+  undecided: z.array(z.string()),
+  piece: z.string(),
+});
 
 /** open: an address that signs a page in, once. */
 export const Opened = z.strictObject({ address: z.string() });

@@ -5,6 +5,7 @@ import { z } from "zod";
 import { packageRoot } from "../paths.ts";
 import { adoptCommand } from "./adopt.ts";
 import { armCommand } from "./arm.ts";
+import { changeCommand } from "./change.ts";
 import { checkCommand } from "./check.ts";
 import { darkCommand } from "./dark.ts";
 import { demoCommand } from "./demo.ts";
@@ -13,6 +14,7 @@ import { initCommand } from "./init.ts";
 import { listenCommand } from "./listen.ts";
 import { openCommand } from "./open.ts";
 import { portsCommand } from "./ports.ts";
+import { readingCommand } from "./reading.ts";
 import { resetCommand } from "./reset.ts";
 import { runCommand } from "./run.ts";
 import { EXIT, Trouble } from "./say.ts";
@@ -56,6 +58,8 @@ export function makeProgram(): Command {
     darkCommand(),
     resetCommand(),
     adoptCommand(),
+    changeCommand(),
+    readingCommand(),
     portsCommand(),
     listenCommand(),
     exportCommand(),

@@ -22,6 +22,8 @@ export const EVENT_KINDS = [
   "light-seen",
   "light-gone",
   "unenforced",
+  "epoch",
+  "reading",
 ] as const;
 export type EventKind = (typeof EVENT_KINDS)[number];
 

@@ -1,4 +1,5 @@
 import { z } from "zod";
+import { EPOCH_PARTS } from "../model/epoch.ts";
 
 /** What may be asked of whoever has the record open for writing: one JSON object a line. */
 export const KeeperRequest = z.discriminatedUnion("verb", [
@@ -17,6 +18,29 @@ export const KeeperRequest = z.discriminatedUnion("verb", [
     session: z.number().int(),
     tag: z.string(),
     does: z.enum(["set", "remove"]),
+  }),
+  /** A change by hand. Texts that are not told are empty; `values` are written with their units. */
+  z.strictObject({
+    verb: z.literal("epoch"),
+    bench: z.string(),
+    part: z.enum(EPOCH_PARTS),
+    wall_ms: z.number().nullable(),
+    serial: z.string(),
+    note: z.string(),
+    who: z.string().max(80),
+    values: z.record(z.string(), z.string()),
+  }),
+  /** What a witness read, or a person typed. */
+  z.strictObject({
+    verb: z.literal("reading"),
+    bench: z.string(),
+    name: z.string(),
+    wall_ms: z.number().nullable(),
+    value: z.number(),
+    unit: z.string(),
+    typed: z.boolean(),
+    note: z.string(),
+    who: z.string().max(80),
   }),
   /** The file is read by the recorder itself, so its name is a whole path. */
   z.strictObject({ verb: z.literal("unpack"), file: z.string() }),

@@ -1,4 +1,6 @@
 import { join } from "node:path";
+import { epochWords } from "../model/epoch.ts";
+import { writeEpoch, writeReading } from "./by-hand.ts";
 import type { KeeperDone, KeeperRequest } from "./keeper-api.ts";
 import { writeNote, writeTag } from "./notes.ts";
 import type { Store } from "./store.ts";
@@ -29,6 +31,10 @@ export class Keeper {
         return this.#note(request);
       case "tag":
         return this.#tag(request);
+      case "epoch":
+        return this.#epoch(request);
+      case "reading":
+        return this.#reading(request);
       case "unpack": {
         const scratch = join(this.#store.folder, "arriving.sqlite");
         const session = yield* unpack(this.#store, request.file, scratch);
@@ -60,6 +66,16 @@ export class Keeper {
       0,
       `Session ${session} ${does === "set" ? "has" : "no longer has"} the tag ${tag}.`,
     );
+  }
+
+  #epoch({ verb: _verb, wall_ms, ...epoch }: KeeperRequest & { verb: "epoch" }): KeeperDone {
+    const id = writeEpoch(this.#store, { ...epoch, at: wall_ms ?? this.#wall_ms() });
+    return done(id, `A new epoch of the ${epoch.part} begins. ${epochWords(epoch)}`);
+  }
+
+  #reading({ verb: _verb, wall_ms, ...reading }: KeeperRequest & { verb: "reading" }): KeeperDone {
+    const id = writeReading(this.#store, { ...reading, at: wall_ms ?? this.#wall_ms() });
+    return done(id, `Reading ${id} is kept: ${reading.value} ${reading.unit}.`);
   }
 
   #benchOf(session: number | null): string {

@@ -1,9 +1,12 @@
 import type Database from "better-sqlite3";
+import type { Epoch } from "../model/epoch.ts";
 import type { BenchEvent } from "../model/event.ts";
 import type { Channel, Manifest } from "../model/manifest.ts";
+import type { Reading } from "../model/reading.ts";
 import type { SessionKind, StoredLatch } from "../model/record-messages.ts";
 import type { SeriesAnswer, SeriesQuery, SeriesStore } from "../model/series.ts";
 import { mono, type Wall_ms, wall } from "../model/times.ts";
+import { epochsOf, eventsByHand, readingsOf } from "./by-hand.ts";
 import { type ChunkFilter, ChunkIndex, Manifests } from "./chunks.ts";
 import { placesOf } from "./columns.ts";
 import { openForReading } from "./folder.ts";
@@ -85,8 +88,27 @@ export class RecordReader implements SeriesStore {
     return answerSeries({ ...this.#parts(), convert }, query, signal);
   }
 
-  /** Events of a window (to not included), in order of their ids. */
+  /**
+   * Events of a window (to not included), in order of their ids. What people did by hand (changes,
+   * typed readings) stands among them by its time, under negative numbers.
+   */
   events(window: TimeWindow, bench?: string): BenchEvent[] {
+    const judged = this.#judged(window, bench);
+    const byHand = eventsByHand(this.#db, bench ?? null, window);
+    return byHand.length === 0 ? judged : [...judged, ...byHand].sort((a, b) => a.wall - b.wall);
+  }
+
+  /** Changes by hand, oldest first. */
+  epochs(bench?: string): Epoch[] {
+    return epochsOf(this.#db, bench ?? null);
+  }
+
+  /** Readings of witnesses, oldest first. */
+  readings(bench?: string): Reading[] {
+    return readingsOf(this.#db, bench ?? null, null);
+  }
+
+  #judged(window: TimeWindow, bench?: string): BenchEvent[] {
     const rows = this.#db
       .prepare(
         `SELECT id, bench, input, tick, mono_ms, wall_ms, kind, hazard, data FROM events

@@ -145,6 +145,15 @@ export const MIGRATIONS: readonly string[] = [
     samples INTEGER NOT NULL, bytes INTEGER NOT NULL, rule TEXT NOT NULL
   );
   `,
+  // Version 3: what a second, independent instrument read, or a person typed. Value in `unit`.
+  `
+  CREATE TABLE readings (
+    id INTEGER PRIMARY KEY, bench TEXT NOT NULL, name TEXT NOT NULL, wall_ms REAL NOT NULL,
+    value REAL NOT NULL, unit TEXT NOT NULL, typed INTEGER NOT NULL, who TEXT NOT NULL,
+    note TEXT NOT NULL
+  );
+  CREATE INDEX readings_at ON readings(bench, name, wall_ms);
+  `,
 ];
 
 /** Version that this program writes. */

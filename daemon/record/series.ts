@@ -1,6 +1,8 @@
+import { witnessOf } from "../model/reading.ts";
 import { ROW } from "../model/ring.ts";
 import type { SeriesAnswer, SeriesQuery, SeriesTrace } from "../model/series.ts";
 import type { Block } from "./blocks.ts";
+import { readingsOf } from "./by-hand.ts";
 import { type Chunk, ChunkIndex } from "./chunks.ts";
 import { type ChannelPlace, placeOf } from "./columns.ts";
 import { gapsOf } from "./gaps.ts";
@@ -48,12 +50,22 @@ export async function answerSeries(
     }
     gatherChunk(parts, index, index.chunks[i] as Chunk, gatherers, rolled);
   }
+  for (const [name, gatherer] of gatherers) gatherWitness(parts, query, name, gatherer);
   signal?.throwIfAborted();
   return {
     channels: Object.fromEntries([...gatherers].map(([name, g]) => [name, g.trace()])),
     gaps: gapsOf(parts.db, query.bench, from, to),
     step_ms: singles ? 0 : step_ms,
   };
+}
+
+/** A witness reads by itself, a few times a second at most: single values beside the blocks. */
+function gatherWitness({ db }: ReadParts, query: SeriesQuery, name: string, to: Gatherer): void {
+  const witness = witnessOf(name);
+  if (witness === null) return;
+  for (const { at, value } of readingsOf(db, query.bench, witness, query.window)) {
+    to.add(at, value, value, value, 1);
+  }
 }
 
 function gatherChunk(
