@@ -1,6 +1,6 @@
 import type Database from "better-sqlite3";
 import type { Manifest } from "../model/manifest.ts";
-import { Block } from "./blocks.ts";
+import { Block, CODEC } from "./blocks.ts";
 
 /** A stored run of samples: a packed block, or a chunk of the one still growing. */
 export interface Chunk {
@@ -14,6 +14,8 @@ export interface Chunk {
   readonly n: number;
   readonly manifest: number;
   readonly benchFile: number;
+  /** 1 where only its rollups are left. */
+  readonly retired: 0 | 1;
 }
 
 /** Which chunks are wanted; a bound left out does not bind. */
@@ -23,12 +25,15 @@ export interface ChunkFilter {
   readonly run?: number;
   readonly from?: number;
   readonly to?: number;
+  /** Only what the coarser rollups do not have yet: the tail, and blocks of an older program. */
+  readonly unrolled?: true;
 }
 
 /** A block spans at most its minute; this much is allowed for civil time that ran differently. */
 const SPAN_ms_MAX = 120_000;
 
-const COLUMNS = `id, session, run, t0, t1, input0, n, manifest, bench_file AS benchFile`;
+const COLUMNS = `id, session, run, t0, t1, input0, n, manifest, bench_file AS benchFile,
+  codec = ${CODEC.retired} AS retired`;
 
 /**
  * The chunks that exist at this moment, found in one short read transaction. Blocks never change,
@@ -43,9 +48,11 @@ export class ChunkIndex {
   constructor(db: Database.Database, filter: ChunkFilter) {
     this.#samples = db.prepare("SELECT codec, crc, blob FROM blocks WHERE id = ?");
     this.#rollup = db.prepare("SELECT codec, crc, blob FROM rollup_1s WHERE block = ?");
-    const { where, values } = conditions(filter);
+    const { unrolled, ...bounds } = filter;
+    const { where, values } = conditions(bounds);
+    const blocks = unrolled === true ? `${where || "WHERE true"} AND rolled = 0` : where;
     const read = db.transaction(() => ({
-      blocks: db.prepare(`SELECT ${COLUMNS} FROM blocks ${where}`).all(values) as Chunk[],
+      blocks: db.prepare(`SELECT ${COLUMNS} FROM blocks ${blocks}`).all(values) as Chunk[],
       tails: db
         .prepare(`SELECT ${COLUMNS}, codec, crc, blob FROM tail ${where}`)
         .all(values) as (Chunk & Stored)[],
@@ -87,7 +94,10 @@ export function openStored(
   return "fault" in block ? { fault: `${name} cannot be read: ${block.fault}` } : block;
 }
 
-function conditions(filter: ChunkFilter): { where: string; values: Record<string, unknown> } {
+function conditions(filter: Omit<ChunkFilter, "unrolled">): {
+  where: string;
+  values: Record<string, unknown>;
+} {
   const parts: string[] = [];
   if (filter.session !== undefined) parts.push("session = @session");
   if (filter.run !== undefined) parts.push("run = @run");

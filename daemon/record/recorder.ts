@@ -10,8 +10,8 @@ import type {
 import { Ring, ROW } from "../model/ring.ts";
 import { encodeColumns, packColumns } from "./blocks.ts";
 import { latchAfter } from "./latch.ts";
+import { Levels } from "./levels.ts";
 import { problemOf } from "./problem.ts";
-import { rollUp } from "./rollup.ts";
 import { Staging } from "./staging.ts";
 import { Store, type StoredRows, type StoreOptions, type WriteOp } from "./store.ts";
 
@@ -56,12 +56,12 @@ export class Recorder {
   readonly #options: RecorderOptions;
   readonly #run: number;
   readonly #boundaries: Boundary[] = [];
+  readonly #levels: Levels;
   #pending: WriteOp[] = [];
   #blocksWaiting = 0;
   #position = 0;
   #lostRows = 0;
-  /** How many of them the record knows of. */
-  #lostTold = 0;
+  #lostTold = 0; // How many of them the record knows of.
   #lostEntries = 0;
   /** What the next row belongs to. */
   #benchFile: number;
@@ -93,12 +93,14 @@ export class Recorder {
     this.lastEventId = this.store.lastEventId;
     this.#lastWall = this.store.lastSampleOf(options.bench);
     this.#run = this.store.nextRun();
+    const { bench } = options;
+    this.#levels = new Levels((place) => this.store.channelId(bench, place, this.#pending));
     this.#benchFile = this.store.benchFileId(options.benchText, this.#pending);
     this.#announced = { benchFile: this.#benchFile, manifest: null, serial: "", session: null };
     this.#pending.push({
       op: "run",
       run: this.#run,
-      bench: options.bench,
+      bench,
       judgeVersion: options.judgeVersion,
       benchFile: this.#benchFile,
       at: (options.wall_ms ?? Date.now)(),
@@ -302,8 +304,8 @@ export class Recorder {
     const before = this.#lastWall;
     this.#lastWall = wall;
     if (before === null || wall - before <= gapAfter_ms(rate_perS)) return;
-    const { bench } = this.#options;
-    this.#pending.push({ op: "gap", bench, from_wall_ms: before, to_wall_ms: wall });
+    const span = { from_wall_ms: before, to_wall_ms: wall };
+    this.#pending.push({ op: "gap", bench: this.#options.bench, ...span });
   }
 
   /** Rows from `from` on, whole blocks packed, chunks of the tail as they are. */
@@ -327,8 +329,10 @@ export class Recorder {
     const rows = this.#rowsOf(staging, 0, packColumns);
     if (rows !== null) {
       const source = { n: staging.n, column: (id: number) => staging.column(id) };
-      const rollup = rollUp(source, staging.manifest);
-      this.#pending.push({ op: "block", rows, rollup, unseen: staging.n - this.#storedRows });
+      const { seconds, minutes, sealed } = this.#levels.add(rows, source, staging.manifest);
+      const unseen = staging.n - this.#storedRows;
+      this.#pending.push({ op: "block", rows, rollup: seconds, minutes, unseen });
+      if (sealed !== null) this.#pending.push({ op: "tens", row: sealed });
       this.#blocksWaiting++;
     }
     staging.clear();
@@ -349,6 +353,8 @@ export class Recorder {
     const rows = unstored ? this.#rowsOf(staging, this.#storedRows, encodeColumns) : null;
     const ops = [...this.#pending];
     if (rows !== null) ops.push({ op: "tail", rows });
+    const tens = this.#levels.growing();
+    if (tens !== null) ops.push({ op: "tens", row: tens });
     const samples = this.#lostRows;
     if (samples > this.#lostTold) ops.push({ op: "lost", run: this.#run, samples });
     try {
@@ -359,6 +365,7 @@ export class Recorder {
     }
     this.#pending = [];
     this.#blocksWaiting = 0;
+    this.#levels.wrote();
     this.#lostTold = samples;
     if (staging !== null) this.#storedRows = staging.n;
     if (this.#trouble !== "") {

@@ -1,7 +1,7 @@
 import type Database from "better-sqlite3";
 import type { Manifest } from "../model/manifest.ts";
 import { Block, packColumns } from "./blocks.ts";
-import { rollUp } from "./rollup.ts";
+import { packRolled, rollUp } from "./rollup.ts";
 import { Staging } from "./staging.ts";
 
 interface TailRow {
@@ -48,7 +48,8 @@ function packGroup(db: Database.Database, group: readonly TailRow[], faults: str
   if (staging.n === 0) return;
   const { t0, t1, input0, input1 } = staging.bounds(0, staging.n);
   const coded = packColumns(staging.columns, 0, staging.n);
-  const rollup = rollUp({ n: staging.n, column: (id) => staging.column(id) }, manifest);
+  const source = { n: staging.n, column: (id: number) => staging.column(id) };
+  const rollup = packRolled(rollUp(source, manifest));
   db.prepare(
     `INSERT INTO blocks (id, session, run, t0, t1, input0, input1, n, manifest, bench_file,
      codec, crc, blob) VALUES (?,?,?,?,?,?,?,?,?,?,?,?,?)`,

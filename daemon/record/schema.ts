@@ -91,6 +91,10 @@ export const MIGRATIONS: readonly string[] = [
     n INTEGER NOT NULL, codec INTEGER NOT NULL, crc INTEGER NOT NULL, blob BLOB NOT NULL
   );
   CREATE INDEX rollup_10s_t0 ON rollup_10s(t0);
+  CREATE INDEX rollup_10s_block ON rollup_10s(block0);
+  -- 1 where the coarser rollups have the block too.
+  ALTER TABLE blocks ADD COLUMN rolled INTEGER NOT NULL DEFAULT 0;
+  CREATE INDEX blocks_unrolled ON blocks(t0) WHERE rolled = 0;
   CREATE TABLE channels (
     id INTEGER PRIMARY KEY, bench TEXT NOT NULL, name TEXT NOT NULL, unit TEXT NOT NULL,
     per_count REAL NOT NULL, UNIQUE (bench, name, unit, per_count)
@@ -214,4 +218,5 @@ export function standInForMissing(db: Database.Database): void {
       if (made !== statement) db.exec(made);
     }
   }
+  if (version < 2) db.exec("CREATE TEMP VIEW blocks AS SELECT *, 0 AS rolled FROM main.blocks");
 }

@@ -1,22 +1,33 @@
 import { witnessOf } from "../model/reading.ts";
 import { ROW } from "../model/ring.ts";
 import type { SeriesAnswer, SeriesQuery, SeriesTrace } from "../model/series.ts";
-import type { Block } from "./blocks.ts";
+import { Block } from "./blocks.ts";
 import { readingsOf } from "./by-hand.ts";
 import { type Chunk, ChunkIndex } from "./chunks.ts";
+import { type CoarseRow, coarseRows, HOUR_ms, placeInAny } from "./coarse.ts";
 import { type ChannelPlace, placeOf } from "./columns.ts";
 import { gapsOf } from "./gaps.ts";
 import type { Converter, ReadParts } from "./reader.ts";
-import { countsFor, ROLLUP, rollupColumn, SECOND_COLUMN, SECOND_ms } from "./rollup.ts";
+import { countsFor, SECOND_COLUMN, SECOND_ms, TEN_SECONDS_ms, unrolled } from "./rollup.ts";
 
 /** Blocks read before other work gets its turn, and an abort is looked for. */
 const BLOCKS_A_TURN = 16;
 /** Samples a pixel up to which each is shown by itself. */
-const SINGLES_A_PIXEL = 2;
+export const SINGLES_A_PIXEL = 2;
+/** From this length of a pixel on, whole hours are shown, also where they are longer than it. */
+const HOURS_FROM_ms = HOUR_ms / 2;
+
+/** Length of the statistics that are read for a pixel of this length; 0 for the samples themselves. */
+export function levelFor(pixel_ms: number): number {
+  if (pixel_ms >= HOURS_FROM_ms) return HOUR_ms;
+  if (pixel_ms >= TEN_SECONDS_ms) return TEN_SECONDS_ms;
+  return pixel_ms >= SECOND_ms ? SECOND_ms : 0;
+}
 
 /**
  * Answers a series query. Steps are counted from 1970, so that a picture that is dragged keeps its
  * values; the first and last step may reach over the window's edges and then count what is there.
+ * A stretch whose full rate was retired is answered in seconds, however close one looks.
  */
 export async function answerSeries(
   parts: ReadParts,
@@ -24,33 +35,57 @@ export async function answerSeries(
   signal?: AbortSignal,
 ): Promise<SeriesAnswer> {
   const { from, to } = query.window;
-  const pixels = Math.max(1, Math.floor(query.pixels));
-  const pixel_ms = Math.max(0, to - from) / pixels;
-  const rolled = pixel_ms >= SECOND_ms;
-  const step_ms = rolled ? Math.ceil(pixel_ms / SECOND_ms) * SECOND_ms : pixel_ms;
+  const pixel_ms = Math.max(0, to - from) / Math.max(1, Math.floor(query.pixels));
+  const level_ms = levelFor(pixel_ms);
+  const answer = await answerAt(parts, query, pixel_ms, level_ms, signal);
+  return answer ?? (await answerAt(parts, query, SECOND_ms, SECOND_ms, signal)) ?? NOTHING;
+}
+
+const NOTHING: SeriesAnswer = { channels: {}, gaps: [], step_ms: 0 };
+
+/** The answer from one level; null where that is the samples, and some are retired. */
+async function answerAt(
+  parts: ReadParts,
+  query: SeriesQuery,
+  pixel_ms: number,
+  level_ms: number,
+  signal: AbortSignal | undefined,
+): Promise<SeriesAnswer | null> {
+  const { from, to } = query.window;
+  const step_ms = level_ms > 0 ? Math.ceil(pixel_ms / level_ms) * level_ms : pixel_ms;
   const first = Math.floor(from / step_ms);
   const steps = step_ms > 0 ? Math.max(0, Math.ceil(to / step_ms) - first) : 0;
-  const reach = { from: first * step_ms, to: (first + steps) * step_ms };
-  const index = new ChunkIndex(parts.db, {
-    bench: query.bench,
-    ...(steps > 0 ? reach : { from, to }),
-  });
-  const samples = index.chunks.reduce((sum, chunk) => sum + chunk.n, 0);
-  const singles = !rolled && samples <= SINGLES_A_PIXEL * pixels;
+  const reach = steps > 0 ? { from: first * step_ms, to: (first + steps) * step_ms } : { from, to };
+  const { index, coarse } = parts.db.transaction(() => ({
+    index: new ChunkIndex(parts.db, {
+      bench: query.bench,
+      ...reach,
+      ...(level_ms > SECOND_ms ? { unrolled: true } : {}),
+    }),
+    coarse: level_ms > SECOND_ms ? coarseRows(parts.db, query, reach, level_ms) : [],
+  }))();
+  if (level_ms === 0 && index.chunks.some((chunk) => chunk.retired === 1)) return null;
+  const singles = level_ms === 0 && samplesOf(index) <= SINGLES_A_PIXEL * Math.max(1, query.pixels);
   const gatherers = new Map(
     query.channels.map((name) => [
       name,
       singles ? new Singles(from, to) : new Steps(first, steps, step_ms),
     ]),
   );
-  for (let i = 0; i < index.chunks.length; i++) {
+  const work = [
+    ...coarse.map((row) => () => gatherCoarse(parts, row, gatherers)),
+    ...index.chunks.map((chunk) => () => {
+      gatherChunk(parts, index, chunk, gatherers, level_ms > 0);
+    }),
+  ];
+  for (let i = 0; i < work.length; i++) {
     if (i % BLOCKS_A_TURN === 0) {
       await new Promise((resolve) => setImmediate(resolve));
       signal?.throwIfAborted();
     }
-    gatherChunk(parts, index, index.chunks[i] as Chunk, gatherers, rolled);
+    work[i]?.();
   }
-  for (const [name, gatherer] of gatherers) gatherWitness(parts, query, name, gatherer);
+  gatherReadings(parts, query, reach, gatherers);
   signal?.throwIfAborted();
   return {
     channels: Object.fromEntries([...gatherers].map(([name, g]) => [name, g.trace()])),
@@ -59,12 +94,48 @@ export async function answerSeries(
   };
 }
 
-/** A witness reads by itself, a few times a second at most: single values beside the blocks. */
-function gatherWitness({ db }: ReadParts, query: SeriesQuery, name: string, to: Gatherer): void {
-  const witness = witnessOf(name);
-  if (witness === null) return;
-  for (const { at, value } of readingsOf(db, query.bench, witness, query.window)) {
-    to.add(at, value, value, value, 1);
+const samplesOf = (index: ChunkIndex): number =>
+  index.chunks.reduce((sum, chunk) => sum + chunk.n, 0);
+
+/** What witnesses read stands among the channels, each reading by itself. */
+function gatherReadings(
+  parts: ReadParts,
+  query: SeriesQuery,
+  reach: { readonly from: number; readonly to: number },
+  gatherers: ReadonlyMap<string, Gatherer>,
+): void {
+  for (const [name, gatherer] of gatherers) {
+    const witness = witnessOf(name);
+    if (witness === null) continue;
+    for (const { at, value } of readingsOf(parts.db, query.bench, witness, reach)) {
+      gatherer.add(at, value, value, value, 1);
+    }
+  }
+}
+
+function gatherCoarse(
+  parts: ReadParts,
+  row: CoarseRow,
+  gatherers: ReadonlyMap<string, Gatherer>,
+): void {
+  if (row.kind === "hours") {
+    const gatherer = gatherers.get(row.name);
+    const place = placeInAny(parts, row);
+    if (gatherer === undefined || place === null) return;
+    for (const [hour, n, min, mean, max] of row.hours) {
+      addStats(gatherer, place, parts.convert, hour * HOUR_ms, min, mean, max, n);
+    }
+    return;
+  }
+  const block = Block.open(row.codec, row.crc, row.blob);
+  if ("fault" in block) {
+    parts.faults.add(`the ten-second rollup ${row.id} cannot be read: ${block.fault}`);
+    return;
+  }
+  const manifest = parts.manifests.of(row.manifest);
+  for (const [name, gatherer] of gatherers) {
+    const place = placeOf(manifest, name);
+    if (place !== null) gatherRollup(block, place, parts.convert, gatherer, TEN_SECONDS_ms);
   }
 }
 
@@ -86,7 +157,7 @@ function gatherChunk(
     const place = placeOf(manifest, name);
     if (place === null) continue;
     if (rollup === null) gatherSamples(block, place, parts.convert, gatherer);
-    else gatherRollup(block, place, parts.convert, gatherer);
+    else gatherRollup(block, place, parts.convert, gatherer, SECOND_ms);
   }
 }
 
@@ -103,32 +174,49 @@ function gatherSamples(block: Block, place: ChannelPlace, convert: Converter, to
   }
 }
 
-function gatherRollup(block: Block, place: ChannelPlace, convert: Converter, to: Gatherer): void {
-  const kind = (k: number): Float64Array | null => block.column(rollupColumn(place.column, k));
-  const second = block.column(SECOND_COLUMN);
-  const n = kind(ROLLUP.n);
-  const min = kind(ROLLUP.min);
-  const sum = kind(ROLLUP.sum);
-  const max = kind(ROLLUP.max);
-  if (second === null || n === null || min === null || sum === null || max === null) return;
+function gatherRollup(
+  block: Block,
+  place: ChannelPlace,
+  convert: Converter,
+  to: Gatherer,
+  step_ms: number,
+): void {
+  const steps = block.column(SECOND_COLUMN);
+  const stats = unrolled(block, place.column);
+  if (steps === null || stats === null) return;
+  const { n, min, sum, max } = stats;
   for (let i = 0; i < block.n; i++) {
     const count = n[i] as number;
     if (count === 0) continue;
-    const a = convert(place.channel, min[i] as number);
-    const b = convert(place.channel, max[i] as number);
-    const mean = convert(place.channel, (sum[i] as number) / count);
-    // A thermistor's counts fall as it warms: the least count is the highest temperature.
-    to.add((second[i] as number) * SECOND_ms, Math.min(a, b), mean, Math.max(a, b), count);
+    const mean = (sum[i] as number) / count;
+    const at = (steps[i] as number) * step_ms;
+    addStats(to, place, convert, at, min[i] as number, mean, max[i] as number, count);
   }
 }
 
-interface Gatherer {
+export function addStats(
+  to: Gatherer,
+  place: ChannelPlace,
+  convert: Converter,
+  at: number,
+  min: number,
+  mean: number,
+  max: number,
+  n: number,
+): void {
+  const a = convert(place.channel, min);
+  const b = convert(place.channel, max);
+  // A thermistor's counts fall as it warms: the least count is the highest temperature.
+  to.add(at, Math.min(a, b), convert(place.channel, mean), Math.max(a, b), n);
+}
+
+export interface Gatherer {
   add(t: number, min: number, mean: number, max: number, n: number): void;
   trace(): SeriesTrace;
 }
 
 /** Every sample by itself. */
-class Singles implements Gatherer {
+export class Singles implements Gatherer {
   readonly #from: number;
   readonly #to: number;
   readonly #points: { t: number; value: number }[] = [];
@@ -161,7 +249,7 @@ class Singles implements Gatherer {
 }
 
 /** One entry a step; steps without a value are left out. `t` is the middle of the step. */
-class Steps implements Gatherer {
+export class Steps implements Gatherer {
   readonly #first: number;
   readonly #step_ms: number;
   readonly #n: Float64Array;

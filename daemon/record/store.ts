@@ -4,8 +4,18 @@ import type { BenchEvent } from "../model/event.ts";
 import type { Manifest } from "../model/manifest.ts";
 import type { JournalEntry, SessionKind, StoredLatch } from "../model/record-messages.ts";
 import type { Coded } from "./blocks.ts";
+import type { ChannelPlace } from "./columns.ts";
 import { closeWritten, type FolderLock, lockFolder, openForWriting } from "./folder.ts";
 import { type LatchRow, latchFrom } from "./latch.ts";
+import {
+  INSERT_TENS,
+  type MinuteStats,
+  rollUnrolled,
+  statsValues,
+  type TensRow,
+  tensValues,
+  upsertStats,
+} from "./levels.ts";
 import { errorCode, problemOf } from "./problem.ts";
 import { repairTail } from "./repair.ts";
 import type { BlockIdentity } from "./staging.ts";
@@ -52,13 +62,16 @@ export type WriteOp =
       readonly manifest: number | null;
     }
   | { readonly op: "tail"; readonly rows: StoredRows }
-  /** `unseen` of its rows were in no chunk of the tail. */
+  /** `unseen` of its rows were in no chunk of the tail; its row of tens is in the same write. */
   | {
       readonly op: "block";
       readonly rows: StoredRows;
       readonly rollup: Coded;
+      readonly minutes: readonly MinuteStats[];
       readonly unseen: number;
     }
+  | { readonly op: "tens"; readonly row: TensRow }
+  | { readonly op: "channel"; readonly id: number; readonly key: ChannelKey }
   | {
       readonly op: "gap";
       readonly bench: string;
@@ -89,7 +102,11 @@ const STATEMENTS = {
   seen: `UPDATE sessions SET samples = samples + ?, last_wall_ms = max(last_wall_ms, ?)
     WHERE id = ?`,
   block: `INSERT INTO blocks (id, session, run, t0, t1, input0, input1, n, manifest, bench_file,
-    codec, crc, blob) VALUES (?,?,?,?,?,?,?,?,?,?,?,?,?)`,
+    codec, crc, blob, rolled) VALUES (?,?,?,?,?,?,?,?,?,?,?,?,?,1)`,
+  tens: INSERT_TENS,
+  minute: upsertStats("rollup_1min", "minute"),
+  hour: upsertStats("rollup_1h", "hour"),
+  channel: "INSERT INTO channels (id, bench, name, unit, per_count) VALUES (?,?,?,?,?)",
   rollup: "INSERT INTO rollup_1s (block, codec, crc, blob) VALUES (?,?,?,?)",
   tailDone: "DELETE FROM tail WHERE block = ?",
   gap: "INSERT INTO gaps (bench, from_wall_ms, to_wall_ms) VALUES (?,?,?)",
@@ -113,6 +130,7 @@ export class Store {
   readonly #next: { run: number; session: number; block: number };
   readonly #benchFiles: Map<string, number>;
   readonly #manifests: Map<string, number>;
+  readonly #channels: Map<string, number>;
 
   private constructor(folder: string, lock: FolderLock, db: Database.Database) {
     this.folder = folder;
@@ -134,6 +152,18 @@ export class Store {
     this.#benchFiles = new Map(files.map((row) => [row.text, row.id]));
     const manifests = db.prepare("SELECT id, json AS text FROM manifests").all() as FileRow[];
     this.#manifests = new Map(manifests.map((row) => [row.text, row.id]));
+    const channels = db.prepare("SELECT id, bench, name, unit, per_count FROM channels");
+    this.#channels = new Map(
+      (channels.raw().all() as ChannelRow[]).map(([id, ...key]) => [JSON.stringify(key), id]),
+    );
+    db.transaction(() => {
+      rollUnrolled(db, (bench) => (place) => {
+        const ops: WriteOp[] = [];
+        const id = this.channelId(bench, place, ops);
+        for (const op of ops) this.#apply(op);
+        return id;
+      });
+    }).immediate();
   }
 
   /**
@@ -185,6 +215,12 @@ export class Store {
   manifestId(manifest: Manifest, ops: WriteOp[]): number {
     const json = JSON.stringify(manifest);
     return idOf(this.#manifests, json, (id) => ops.push({ op: "manifest", id, manifest }));
+  }
+
+  /** Row id of a bench's channel; where it is new, an op that stores it is added to `ops`. */
+  channelId(bench: string, { channel }: ChannelPlace, ops: WriteOp[]): number {
+    const key = JSON.stringify([bench, channel.name, channel.unit, channel.perCount]);
+    return idOf(this.#channels, key, (id) => ops.push({ op: "channel", id, key }));
   }
 
   get lastEventId(): number {
@@ -264,8 +300,18 @@ export class Store {
       case "block":
         run("block", ...rowValues(op.rows));
         run("rollup", op.rows.block, op.rollup.codec, op.rollup.crc, op.rollup.blob);
+        for (const m of op.minutes) {
+          run("minute", ...statsValues(m, "minute"));
+          run("hour", ...statsValues(m, "hour"));
+        }
         run("tailDone", op.rows.block);
         run("seen", op.unseen, op.rows.t1, op.rows.session);
+        break;
+      case "tens":
+        run("tens", ...tensValues(op.row));
+        break;
+      case "channel":
+        run("channel", op.id, ...(JSON.parse(op.key) as (string | number)[]));
         break;
       case "gap":
         run("gap", op.bench, op.from_wall_ms, op.to_wall_ms);
@@ -293,6 +339,10 @@ export class Store {
     }
   }
 }
+
+/** A channel as `channels` tells it apart: bench, name, unit and scale, as JSON. */
+type ChannelKey = string;
+type ChannelRow = [id: number, bench: string, name: string, unit: string, perCount: number];
 
 interface FileRow {
   readonly id: number;

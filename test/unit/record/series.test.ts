@@ -173,6 +173,10 @@ async function expectEqualToBrute(from: number, to: number, pixels: number): Pro
 describe("series against every sample, one by one", () => {
   test.each([
     ["the whole night from rollups", -60_000, 800_000, 200, 5000],
+    ["ten seconds and more a pixel", -60_000, 800_000, 50, 20_000],
+    ["just ten seconds a pixel", 100_000, 600_000, 50, 10_000],
+    ["a pixel of half an hour", -60_000, 7_200_000, 4, 3_600_000],
+    ["two hours a pixel", -90_000_000, 90_000_000, 25, 7_200_000],
     ["a pixel of just a second", 0, 300_000, 300, 1000],
     ["under a second a pixel", 0, 100_000, 500, 200],
     ["single samples", 90_000, 92_000, 1000, 0],

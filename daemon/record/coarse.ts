@@ -1,0 +1,93 @@
+import type Database from "better-sqlite3";
+import type { SeriesQuery } from "../model/series.ts";
+import { type ChannelPlace, placeOf } from "./columns.ts";
+import type { ReadParts } from "./reader.ts";
+
+/** Statistics coarser than a second, as a query reads them. */
+export const HOUR_ms = 3_600_000;
+/** A row of `rollup_10s` spans an hour, or a little more where blocks stick out of it. */
+const SPAN_ms_MAX = 2 * HOUR_ms;
+
+export type CoarseRow =
+  | {
+      readonly kind: "tens";
+      readonly id: number;
+      readonly manifest: number;
+      readonly codec: number;
+      readonly crc: number;
+      readonly blob: Uint8Array;
+    }
+  | {
+      readonly kind: "hours";
+      readonly name: string;
+      readonly unit: string;
+      readonly perCount: number;
+      /** Hours since 1970, then the statistics in counts. */
+      readonly hours: readonly (readonly [number, number, number, number, number])[];
+    };
+
+interface Reach {
+  readonly from: number;
+  readonly to: number;
+}
+
+/** Rows of the level, taken along whole: the newest of them still grows. */
+export function coarseRows(
+  db: Database.Database,
+  query: SeriesQuery,
+  reach: Reach,
+  level_ms: number,
+): CoarseRow[] {
+  return level_ms === HOUR_ms ? hourRows(db, query, reach) : tensRows(db, query.bench, reach);
+}
+
+function tensRows(db: Database.Database, bench: string, { from, to }: Reach): CoarseRow[] {
+  const rows = db
+    .prepare(
+      `SELECT id, manifest, codec, crc, blob FROM rollup_10s
+       WHERE t0 >= @from - @span AND t1 >= @from AND t0 < @to
+         AND run IN (SELECT id FROM runs WHERE bench = @bench)`,
+    )
+    .all({ from, to, bench, span: SPAN_ms_MAX }) as Omit<CoarseRow & { kind: "tens" }, "kind">[];
+  return rows.map((row) => ({ kind: "tens", ...row }));
+}
+
+function hourRows(db: Database.Database, query: SeriesQuery, { from, to }: Reach): CoarseRow[] {
+  const channels = db
+    .prepare("SELECT id, name, unit, per_count AS perCount FROM channels WHERE bench = ?")
+    .all(query.bench) as { id: number; name: string; unit: string; perCount: number }[];
+  const hours = db
+    .prepare(
+      `SELECT hour, n, min, mean, max FROM rollup_1h
+       WHERE channel = ? AND hour >= ? AND hour < ?`,
+    )
+    .raw();
+  return channels
+    .filter(({ name }) => query.channels.includes(name))
+    .map(({ id, ...channel }) => ({
+      kind: "hours",
+      ...channel,
+      hours: hours.all(id, Math.floor(from / HOUR_ms), Math.ceil(to / HOUR_ms)) as [
+        number,
+        number,
+        number,
+        number,
+        number,
+      ][],
+    }));
+}
+
+/** A channel of that name and scale, of any manifest that the record has. */
+export function placeInAny(
+  parts: ReadParts,
+  wanted: { readonly name: string; readonly unit: string; readonly perCount: number },
+): ChannelPlace | null {
+  const ids = parts.db.prepare("SELECT id FROM manifests ORDER BY id DESC").pluck().all();
+  for (const id of ids as number[]) {
+    const place = placeOf(parts.manifests.of(id), wanted.name);
+    if (place?.channel.unit === wanted.unit && place.channel.perCount === wanted.perCount) {
+      return place;
+    }
+  }
+  return null;
+}
