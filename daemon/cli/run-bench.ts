@@ -173,6 +173,7 @@ function announce(
 ): void {
   const { darkPort } = supervision;
   const { pid } = process;
+  const { transport } = bench.controller;
   writeNotice({
     bench: bench.name,
     pid,
@@ -181,6 +182,7 @@ function announce(
     page: desk.address(),
     darkPort,
     folder,
+    port: transport.kind === "serial" ? transport.path : "",
   });
   const page = desk.sign() ?? desk.address();
   telling.started({ kind: "started", bench: bench.name, pid, page, darkPort, folder }, more);

@@ -23,6 +23,8 @@ const Notice = z.object({
   page: z.string(),
   darkPort: z.number(),
   folder: z.string(),
+  /** Serial port of its controller; empty where it has none. */
+  port: z.string().default(""),
 });
 export type Notice = z.infer<typeof Notice>;
 

@@ -1,8 +1,12 @@
 /** Numbers as strange firmware prints them. Nothing here throws, whatever the text. */
 
 /** What boards print where they have no reading. */
-const NO_READING =
-  /^(?:[+-]?nan|[+-]?inf(?:inity)?|ovf|over|open|short|err(?:or)?|null|n\/?a|-+|\?+)$/i;
+export const NO_READING_PATTERN =
+  "[+-]?nan|[+-]?inf(?:inity)?|ovf|over|open|short|err(?:or)?|null|n/?a|--+|\\?+".replace(
+    /[a-z]/g,
+    (letter) => `[${letter}${letter.toUpperCase()}]`,
+  );
+const NO_READING = new RegExp(`^(?:${NO_READING_PATTERN})$`);
 /** A unit may stand behind a number, parted from it or not. */
 const UNIT = "[A-Za-z°µμΩ%/]{0,8}";
 

@@ -1,5 +1,5 @@
 import { SEPARATORS, type StreamSpec } from "../../model/stream.ts";
-import { isDamaged, mendSigns, numberPattern, readPrinted } from "./numbers.ts";
+import { isDamaged, mendSigns, NO_READING_PATTERN, numberPattern, readPrinted } from "./numbers.ts";
 
 /**
  * What a line is. values: every column; some: not all of them; text: words without any column, such
@@ -53,7 +53,7 @@ export class StreamReader {
 
   private patternOf(name: string): RegExp {
     const number = numberPattern(this.spec.decimals);
-    const value = `(${number}|[A-Za-z/?-]{1,8})`;
+    const value = `(${number}|(?:${NO_READING_PATTERN})(?![A-Za-z]))`;
     const between =
       this.spec.format === "labelled" ? "[^0-9+\\-.,;]{0,24}?[\\s:=]" : "\\s*[=:]\\s*";
     return new RegExp(`${BEFORE}${literally(name)}${between}${value}(?![\\d])`, "g");
