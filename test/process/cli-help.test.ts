@@ -1,6 +1,7 @@
 import type { Command } from "commander";
 import { afterAll, describe, expect, test } from "vitest";
 import { makeProgram } from "../../daemon/cli/program.ts";
+import { EXIT, type Trouble } from "../../daemon/cli/say.ts";
 import { Place, runCli } from "./daemon.ts";
 
 /** The words of an example as a shell would hand them over; examples quote nothing. */
@@ -94,36 +95,35 @@ describe("options", () => {
   });
 });
 
-describe("slips, at the built command line", () => {
-  const place = new Place();
-  afterAll(() => place.remove());
+/** What a command line is refused with, before it did anything; and what was written about it. */
+async function refusal(line: string[]): Promise<{ error: unknown; written: string }> {
+  const program = makeProgram();
+  let written = "";
+  for (const command of [program, ...program.commands]) {
+    command.configureOutput({ writeErr: (piece) => (written += piece) });
+  }
+  const error = await program.parseAsync(line, { from: "user" }).then(
+    () => null,
+    (refused: unknown) => refused,
+  );
+  return { error, written };
+}
 
+describe("slips", () => {
   test.each([
     [["sttus"], "Did you mean status?"],
     [["demo", "--seeed", "7"], "Did you mean --seed?"],
     [["run", "--stay-drak"], "Did you mean --stay-dark?"],
-    [["reset", "permit-expird"], "did you mean permit-expired?"],
   ])("%j is named", async (line, words) => {
-    const { code, stderr, stdout } = await runCli(place, ...line);
-    expect(code).toBe(2);
-    expect(stderr).toContain(words);
-    expect(stdout).toBe("");
+    const { error, written } = await refusal(line);
+    expect(error).not.toBeNull();
+    expect(written).toContain(words);
   });
 
-  test("the version is that of the package", async () => {
-    const { code, stdout } = await runCli(place, "--version");
-    expect(code).toBe(0);
-    expect(stdout).toMatch(/^\d+\.\d+\.\d+\n$/);
-  });
-
-  test("a trouble is told in words, and with --json as one object that says the same", async () => {
-    const { code, stderr, stdout } = await runCli(place, "arm", "1.2", "--json");
-    expect(code).toBe(2);
-    expect(stderr).toContain("Found 1.2; wanted a current with its unit");
-    expect(JSON.parse(stdout)).toMatchObject({ ok: false, reason: "trouble", exit: 2 });
-    const nobody = await runCli(place, "status", "--on", "south");
-    expect(nobody.code).toBe(3);
-    expect(nobody.stderr).toContain('No daemon runs for a bench named "south".');
+  test("a mistyped cause is named", async () => {
+    const { error } = await refusal(["reset", "permit-expird"]);
+    expect(error).toMatchObject({ exit: EXIT.usage });
+    expect(String(error)).toContain("did you mean permit-expired?");
   });
 
   test.each([
@@ -136,10 +136,44 @@ describe("slips, at the built command line", () => {
     [["demo", "--for", "-1 h"]],
     [["demo", "--for", "1000 h"]],
     [["listen", "/dev/null", "--baud", "fast"]],
-  ])("%j is nonsense and refused", async (line) => {
-    const { code, stderr } = await runCli(place, ...line);
+    [["run", "--port", "abc"]],
+    [["run", "--port=-1"]],
+    [["run", "--port", "70000"]],
+    [["run", "--port="]],
+    [["arm", "1.2"]],
+    [["set", "lots"]],
+  ])("%j is nonsense and refused, with what is wanted", async (line) => {
+    const { error } = await refusal(line);
+    expect(error).toMatchObject({ exit: EXIT.usage });
+    expect(String(error)).toContain("; wanted ");
+    expect((error as Trouble).remedy).toContain("Nothing was changed.");
+  });
+});
+
+describe("the built command line", () => {
+  const place = new Place();
+  afterAll(() => place.remove());
+
+  test("--version is that of the package", async () => {
+    const { code, stdout } = await runCli(place, "--version");
+    expect(code).toBe(0);
+    expect(stdout).toMatch(/^\d+\.\d+\.\d+\n$/);
+  });
+
+  test("a slip: exit code 2, words on stderr, nothing on stdout", async () => {
+    const { code, stderr, stdout } = await runCli(place, "sttus");
     expect(code).toBe(2);
-    expect(stderr).toContain("wanted ");
-    expect(stderr).toContain("Nothing was changed.");
+    expect(stderr).toContain("Did you mean status?");
+    expect(stdout).toBe("");
+  });
+
+  test("a trouble is told in words, and with --json as one object that says the same", async () => {
+    const { code, stderr, stdout } = await runCli(place, "arm", "1.2", "--json");
+    expect(code).toBe(2);
+    expect(stderr).toContain("Found 1.2; wanted a current with its unit");
+    expect(JSON.parse(stdout)).toMatchObject({ ok: false, reason: "trouble", exit: 2 });
+    const nobody = await runCli(place, "status", "--on", "south");
+    expect(nobody.code).toBe(3);
+    expect(nobody.stderr).toContain('No daemon runs for a bench named "south".');
   });
 });
