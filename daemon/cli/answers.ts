@@ -142,7 +142,33 @@ export const Opened = z.strictObject({ address: z.string() });
 
 /** ports: serial ports; `problem` is empty where nothing stands in the way. */
 export const Ports = z.array(
-  z.strictObject({ path: z.string(), description: z.string(), problem: z.string() }),
+  z.strictObject({
+    path: z.string(),
+    description: z.string(),
+    problem: z.string(),
+    driver: z.string(),
+    group: z.string(),
+    allowed: z.boolean(),
+    owner: z.string(),
+    /** Null where it is not known, or no USB device. */
+    powerSaving: z.boolean().nullable(),
+    latency_ms: z.number().nullable(),
+    advice: z.array(
+      z.strictObject({
+        code: z.enum([
+          "permission",
+          "taken",
+          "prober",
+          "power-saving",
+          "latency",
+          "hang-up",
+          "resets",
+        ]),
+        found: z.string(),
+        do: z.string(),
+      }),
+    ),
+  }),
 );
 
 /** run: one object a line, while it runs. */
