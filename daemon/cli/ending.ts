@@ -3,6 +3,10 @@ export const BY_PERSON = 0;
 export const DAEMON_STOPPED = 85;
 export const HOST_DEFECT = 87;
 
+/** Exit code after a defect of our own, and how long the last line may take to leave, ms. */
+const DEFECT_EXIT = 70;
+const WRITTEN_ms_MAX = 50;
+
 /** What ends the daemon, and which cause it leaves: a person (0), or the system stopping it. */
 export class Ending {
   #resolve: (cause: number) => void = () => {};
@@ -28,7 +32,8 @@ export class Ending {
     process.on("uncaughtException", (error) => {
       dark();
       process.stderr.write(`beamsitter found a defect of its own and went dark.\n${error.stack}\n`);
-      process.exit(70);
+      // A serial port writes in the background: the dark must be out before the process is gone.
+      setTimeout(() => process.exit(DEFECT_EXIT), WRITTEN_ms_MAX);
     });
   }
 

@@ -57,6 +57,8 @@ export class Loop {
   #inputs = 0;
   /** Broken lines counted when the port opened. */
   #brokenAtOpen = 0;
+  /** Set by a defect of ours: what is judged from then on cannot be trusted, so nothing is. */
+  #defect = false;
   /** Rows of the ring written so far; the recorder finds by it where a manifest begins. */
   #rows = 0;
 
@@ -96,6 +98,7 @@ export class Loop {
    * so that a stall ends in one permit for what is true now.
    */
   receive(lines: readonly Received[]): void {
+    if (this.#defect) return;
     let newest = -1;
     for (let i = lines.length - 1; i >= 0 && newest < 0; i--) {
       if (this.session.brings(lines[i]?.line ?? "")) newest = i;
@@ -112,6 +115,7 @@ export class Loop {
 
   /** Time has come to one of the deadlines of link or judge. */
   elapse(now: Mono_ms): void {
+    if (this.#defect) return;
     this.session.elapse(now);
     this.#drainLink(now);
     if (now >= this.out.deadline_ms) {
@@ -136,8 +140,9 @@ export class Loop {
     this.#drainLink(now);
   }
 
-  /** Dark past the judge: the last act after a defect of ours. */
+  /** Dark past the judge, and then nothing more: the last act after a defect of ours. */
   emergency(cause: number): void {
+    this.#defect = true;
     this.session.dark(cause);
     this.#putLevel();
     this.#sendQueued();

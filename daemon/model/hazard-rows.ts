@@ -131,7 +131,8 @@ export const HAZARD_ROWS: Readonly<Record<HazardId, HazardRow>> = {
   ),
   "sample-gap": row("time", "time since the last sample", above, [], [0, 0], [0, 0], {
     safety_ms: 0,
-    follows: "controller.rate (a warning after three periods) and controller.term (the trip)",
+    follows:
+      "controller.rate (a warning after three periods, or a quarter of the term) and controller.term (the trip)",
   }),
   "tick-drift": row(
     "ratio",
@@ -217,7 +218,10 @@ export const HAZARD_ROWS: Readonly<Record<HazardId, HazardRow>> = {
 export function defaultLevels(id: HazardId, times: HazardTimes): HazardLevels {
   const { defaults } = HAZARD_ROWS[id];
   if (id === "sample-gap") {
-    return { ...defaults, warn: 3000 / times.rate_perS, trip: times.term_ms };
+    // Three periods, but a stall that a desktop computer has every few minutes is not worth a word:
+    // it is told from a quarter of the term on.
+    const warn = Math.max(3000 / times.rate_perS, times.term_ms / 4);
+    return { ...defaults, warn, trip: times.term_ms };
   }
   if (id === "dark-time") return { ...defaults, trip: times.darkTime_ms };
   return defaults;

@@ -30,7 +30,7 @@ describe("the files that ship", () => {
   test("every hazard row has levels, and those that follow from term and dark time do", () => {
     const { hazards } = benchOf(changed(NORTH, "term: 500 ms", "term: 600 ms"));
     expect(Object.keys(hazards)).toEqual([...HAZARD_IDS]);
-    expect(hazards["sample-gap"]).toMatchObject({ warn: 60, trip: 600 });
+    expect(hazards["sample-gap"]).toMatchObject({ warn: 150, trip: 600 });
     expect(hazards["dark-time"].trip).toBe(600_000);
   });
   test("a bench is frozen all through", () => {

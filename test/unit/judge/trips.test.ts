@@ -180,11 +180,11 @@ describe("sensor open and short, by its share of the divider", () => {
 });
 
 describe("samples stop", () => {
-  test("a warning after three periods, a trip at the term, each by a deadline", () => {
+  test("a warning after a quarter of the term, a trip at the term, each by a deadline", () => {
     const rig = new Rig().light(1500);
     const last_ms = rig.now_ms;
     rig.deadline();
-    expect(rig.now_ms - last_ms).toBe(60);
+    expect(rig.now_ms - last_ms).toBe(125);
     expect(rig.events("warning").map((e) => e.hazard)).toEqual([71]);
     expect(rig.trips()).toEqual([]);
     rig.deadline();
@@ -194,10 +194,10 @@ describe("samples stop", () => {
 
   test("a deadline a millisecond early changes nothing", () => {
     const rig = new Rig().light(1500);
-    rig.now_ms += 59;
+    rig.now_ms += 124;
     rig.elapse();
     expect(rig.events("warning")).toEqual([]);
-    rig.now_ms += 440;
+    rig.now_ms += 375;
     rig.elapse();
     expect(rig.trips()).toEqual([]);
   });
@@ -210,7 +210,7 @@ describe("samples stop", () => {
     expect(rig.stateName).toBe("standby");
     rig.sample();
     expect(rig.events("warning-over").map((e) => e.hazard)).toEqual([71]);
-    expect(rig.out.deadline_ms).toBe(rig.now_ms + 60);
+    expect(rig.out.deadline_ms).toBe(rig.now_ms + 125);
   });
 });
 

@@ -97,6 +97,17 @@ describe("the chain on a simulated clock", () => {
     expect(c.events.find((e) => e.kind === "trip")?.hazard).toBe(cause);
   });
 
+  test("a defect of our own: dark at once past the judge, and no line after it", () => {
+    const c = new Chain();
+    c.light(600);
+    c.loop.emergency(87);
+    expect(c.until(() => !c.lit, 200)).toBeLessThanOrEqual(2 + FALL_ms);
+    const lines = c.written.length;
+    c.run(5000);
+    expect(c.written).toHaveLength(lines);
+    expect(c.lit).toBe(false);
+  });
+
   test("dark by a person: standby, and nothing to reset", () => {
     const c = new Chain();
     c.light(600);
