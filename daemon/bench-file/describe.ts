@@ -4,6 +4,7 @@ import { HAZARD_ROWS } from "../model/hazard-rows.ts";
 import { formatQuantity } from "../model/quantities.ts";
 import { KINDS, type QuantityKind } from "../model/quantity-units.ts";
 import { enforcementWords, type StreamSpec } from "../model/stream.ts";
+import { calibrationWords } from "../model/witness.ts";
 import { REACTION_ms, slowestRates } from "./lints/hazards.ts";
 import { wireShares } from "./lints/link.ts";
 import { worstHeating_K } from "./lints/sensors.ts";
@@ -87,7 +88,19 @@ function factsOf(bench: Bench): Facts {
     facts.set(`protections.${key}`, has ? "yes" : "no");
   }
   addRecord(facts, bench);
+  addWitnesses(facts, bench);
   return facts;
+}
+
+/** A changed instrument is asked only by the next start of the daemon. */
+function addWitnesses(facts: Facts, { witnesses }: Bench): void {
+  for (const witness of witnesses ?? []) {
+    const { name, address, query, unit, perRead, period_ms } = witness;
+    const where = address.kind === "tcp" ? `${address.host}:${address.port}` : address.path;
+    const calibration = calibrationWords(witness);
+    const asked = `${query} at ${where} each ${time(period_ms)}, ${perRead} ${unit}`;
+    facts.set(`witness.${name}`, calibration === "" ? asked : `${asked}, ${calibration}`);
+  }
 }
 
 function addRecord(facts: Facts, { record }: Bench): void {

@@ -29,6 +29,7 @@ const READING: Readonly<Record<string, string>> = {
   unit: "The unit is not one of this channel's kind.",
   law: "A channel needs exactly one law that turns counts into its unit.",
   points: "A derating has 2 to 16 points.",
+  date: "A day stands before another that it must follow.",
 };
 
 /** Every word that `explain` knows. */

@@ -12,6 +12,7 @@ import {
 import { conversionSchema } from "./schema-channels.ts";
 import { hazardsSchema } from "./schema-hazards.ts";
 import { cutOffSchema, streamSchema } from "./schema-stream.ts";
+import { witnessSchema } from "./schema-witness.ts";
 
 /**
  * The shape of a bench file: its keys, their kinds and the widest values that make sense. What
@@ -196,5 +197,6 @@ export const fileSchema = section("a map of keys, beginning with bench", {
   hazards: hazardsSchema.optional(),
   protections: protectionsSchema.optional(),
   record: recordSchema.optional(),
+  witness: witnessSchema.optional(),
 });
 export type BenchFile = z.output<typeof fileSchema>;

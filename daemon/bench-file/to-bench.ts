@@ -11,6 +11,7 @@ import { kindFindings } from "./channel-kinds.ts";
 import type { Finding } from "./problem.ts";
 import type { BenchFile } from "./schema.ts";
 import { hazardLevels } from "./schema-hazards.ts";
+import { witnessesOf } from "./schema-witness.ts";
 import { type StreamParts, streamOf } from "./to-stream.ts";
 
 /** The bench of a file whose every value has been read; findings are combinations that cannot be. */
@@ -42,6 +43,7 @@ export function toBench(file: BenchFile): { bench: Bench; findings: Finding[] } 
     }),
     protections: protectionsOf(file),
     record: recordOf(file),
+    witnesses: witnessesOf(file.witness ?? {}, findings),
   };
   return { bench, findings };
 }

@@ -18,6 +18,7 @@ import { codeOf, resetWords, Trouble } from "./say.ts";
 import { Telling } from "./telling.ts";
 import { transportFor } from "./transports.ts";
 import { beganAt, dataFolder, freeSocket, removeNotice, writeNotice } from "./where.ts";
+import { startWitnesses } from "./witnesses.ts";
 
 export interface RunOptions {
   readonly file: string | URL;
@@ -49,6 +50,7 @@ interface Parts {
   readonly telling: Telling;
   readonly end: Ending;
   desk: DeskProcess | null;
+  endWitnesses: () => void;
 }
 
 /**
@@ -66,22 +68,26 @@ export async function runBench(options: RunOptions): Promise<void> {
   const recording = await startRecorder(folder, bench, text, ring);
   const telling = new Telling(options.json);
   const end = new Ending(() => telling.note(NOT_SUSPENDED));
-  const parts: Parts = { bench, ring, recording, socket, folder, telling, end, desk: null };
+  const made = { bench, ring, recording, socket, folder, telling, end };
+  const parts: Parts = { ...made, desk: null, endWitnesses: () => {} };
   const supervision = await startSupervision(parts, options);
   end.onDefect(() => supervision.emergency(HOST_DEFECT));
-  const secondHome = startSecondHome(folder, bench, (words, weight) =>
-    supervision.loop.telling.say("record", "", words, weight, null, 0, 0),
-  );
+  const sayRecord = (words: string, weight: "calm" | "warn"): void =>
+    supervision.loop.telling.say("record", "", words, weight, null, 0, 0);
+  const secondHome = startSecondHome(folder, bench, sayRecord);
   try {
     parts.desk = await startDesk(parts, supervision, host, options.port);
     const scripted = bench.controller.transport.kind === "built-in" && !options.stayDark;
     announce(parts, parts.desk, supervision, firstWords(supervision, hints, scripted));
+    const work = { bench: bench.name, folder, witnesses: bench.witnesses ?? [] };
+    parts.endWitnesses = startWitnesses(work, (words) => sayRecord(words, "calm"));
     if (scripted) await bringPerson(socket);
     supervision.leave(await end.wait(options.for_ms));
     await until(DARK_ms_MAX, () => !isLit(supervision));
     telling.ended(lastWords(bench, supervision));
   } finally {
     supervision.close();
+    parts.endWitnesses();
     parts.desk?.close();
     removeNotice(bench.name);
     rmSync(socket, { force: true });

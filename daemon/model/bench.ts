@@ -1,5 +1,6 @@
 import type { Conversion } from "./conversion.ts";
 import type { StreamSpec } from "./stream.ts";
+import type { WitnessSpec } from "./witness.ts";
 
 /**
  * A bench file, parsed: every value checked, in one unit, with defaults filled in. bench-file/ makes
@@ -23,6 +24,8 @@ export interface Bench {
   readonly hazards: Readonly<Record<HazardId, HazardLevels>>;
   readonly protections: ProtectionsPart;
   readonly record: RecordPart;
+  /** Second instruments; none where left out. */
+  readonly witnesses?: readonly WitnessSpec[];
 }
 
 export type TransportSpec =
