@@ -2,7 +2,7 @@ import type { FastifyInstance, FastifyReply, FastifyRequest } from "fastify";
 import { z } from "zod";
 import type { SwitchAnswer } from "../control/api.ts";
 import { eventLine } from "./event-lines.ts";
-import { askerFor } from "./guarded.ts";
+import { askerFor, isApi } from "./guarded.ts";
 import { parseSeries, parseWindow, seriesJson } from "./series.ts";
 import type { DeskParts } from "./server.ts";
 
@@ -19,7 +19,7 @@ const told = (reply: FastifyReply, answer: SwitchAnswer): FastifyReply =>
 /** Everything under /api/. */
 export function addAnswers(app: FastifyInstance, parts: DeskParts): void {
   app.addHook("onSend", async (request, reply) => {
-    if (request.url.startsWith("/api/")) reply.header("cache-control", "no-store");
+    if (isApi(request)) reply.header("cache-control", "no-store");
   });
   addReading(app, parts);
   addAsking(app, parts);

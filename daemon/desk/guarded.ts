@@ -9,6 +9,13 @@ const proofs = new WeakMap<FastifyRequest, Proof>();
 /** How a request that passed the guard proved itself; undefined where it needed no proof. */
 export const proofOf = (request: FastifyRequest): Proof | undefined => proofs.get(request);
 
+/**
+ * Whether the route that will answer stands under /api/. Asked of the route, never of the address as
+ * it was written: the router reads `/%61pi/arm` and `http://host/api/arm` as `/api/arm`.
+ */
+export const isApi = (request: FastifyRequest): boolean =>
+  (request.routeOptions.url ?? request.url).startsWith("/api/");
+
 /** Who asks the switch for this request. */
 export const askerFor = (request: FastifyRequest): "page" | "script" | "away" =>
   askerOf(request.ip, proofOf(request) ?? "token");
@@ -43,7 +50,7 @@ export function addGuard(
     }
     const proof = sign.proofOf(request.headers);
     if (proof !== undefined) proofs.set(request, proof);
-    if (!request.url.startsWith("/api/")) return;
+    if (!isApi(request)) return;
     if (proof === undefined) {
       const words = "Not signed in. Run beamsitter open on the bench's computer.";
       return refuse(reply, 401, "not-signed-in", words);

@@ -1,4 +1,5 @@
 import { mkdirSync, mkdtempSync, rmSync, writeFileSync } from "node:fs";
+import { request } from "node:http";
 import type { AddressInfo } from "node:net";
 import { tmpdir } from "node:os";
 import { join } from "node:path";
@@ -164,6 +165,42 @@ describe("the guard", () => {
     expect((await post("/api/dark", {}, { cookie: await cookie() })).status).toBe(403);
     expect((await post("/api/dark", {}, bearer)).status).toBe(200);
     expect(asked).toEqual([{ verb: "dark", asker: "script" }]);
+  });
+});
+
+/** A request whose address goes out exactly as it is written here; fetch would tidy it up. */
+const raw = (method: string, path: string, headers: Record<string, string>): Promise<number> =>
+  new Promise((resolve, reject) => {
+    const { port } = new URL(base);
+    request({ host: "127.0.0.1", port, method, path, headers }, (response) =>
+      resolve(response.resume().statusCode ?? 0),
+    )
+      .on("error", reject)
+      .end(method === "POST" ? JSON.stringify({ current_mA: 100, cause: "person" }) : "");
+  });
+
+describe("an address written otherwise", () => {
+  const json = { "content-type": "application/json" };
+
+  test.each([
+    ["POST", "/%61pi/arm"],
+    ["POST", "/ap%69/set"],
+    ["POST", "/%61%70%69/reset"],
+    ["POST", "http://127.0.0.1/api/arm"],
+    ["POST", "https://any.example/api/reset"],
+    ["GET", "/%61pi/snapshot"],
+    ["GET", "http://127.0.0.1/api/events"],
+    ["HEAD", "/%61pi/snapshot"],
+  ])("%s %s needs a sign-in like its plain form, and asks nobody", async (method, path) => {
+    expect(await raw(method, path, json)).toBe(401);
+    expect(await raw(method, path, { ...json, authorization: "Bearer wrong" })).toBe(401);
+    expect(asked).toEqual([]);
+  });
+
+  test("a cookie without an origin does not act by it either", async () => {
+    const headers = { ...json, cookie: await cookie() };
+    expect(await raw("POST", "/%61pi/arm", headers)).toBe(403);
+    expect(asked).toEqual([]);
   });
 });
 
