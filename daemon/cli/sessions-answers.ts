@@ -77,5 +77,18 @@ export const SessionPacked = z.strictObject({
   bytes: z.number().int(),
 });
 
+/** sessions import: `session` is null where it was only checked. */
+export const SessionImported = z.strictObject({
+  session: z.number().int().nullable(),
+  rows: z.number().int(),
+  from: z.number(),
+  to: z.number(),
+  ratePerS: z.number(),
+  channels: z.array(z.strictObject({ name: z.string(), unit: z.string() })),
+  badRows: z.number().int(),
+  /** The first thousand, by line of the file. */
+  bad: z.array(z.strictObject({ line: z.number().int(), why: z.string() })),
+});
+
 /** sessions note, tag, unpack: number of what was made, 0 where nothing was. */
 export const SessionKept = z.strictObject({ id: z.number().int(), words: z.string() });

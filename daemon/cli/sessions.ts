@@ -1,4 +1,5 @@
 import type { Command } from "commander";
+import { importCommand } from "./sessions-import.ts";
 import { noteCommand, tagCommand } from "./sessions-keep.ts";
 import { packCommand, unpackCommand } from "./sessions-pack.ts";
 import { listAction, showCommand, verifyCommand } from "./sessions-read.ts";
@@ -22,6 +23,7 @@ export function sessionsCommand(): Command {
     verifyCommand(),
     packCommand(),
     unpackCommand(),
+    importCommand(),
   ]) {
     sessions.addCommand(part);
   }

@@ -12,6 +12,11 @@ export interface Channel {
   readonly count_max: number;
   /** 0 is the judge's group, in every sample; 1–15 come in turn. */
   readonly group: number;
+  /**
+   * Set where counts × perCount is the value itself: numbers brought in from elsewhere, which no
+   * conversion of a bench file may touch.
+   */
+  readonly inUnit?: true;
 }
 
 /** What the controller said of itself, complete and checked. */

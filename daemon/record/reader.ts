@@ -24,6 +24,12 @@ export type Converter = (channel: Channel, counts: number) => number;
 /** The manifest's own scale: value = counts × perCount. */
 export const byManifest: Converter = (channel, counts) => counts * channel.perCount;
 
+/** The same converter, but for what came from elsewhere in units of its own. */
+const keepingUnits =
+  (convert: Converter): Converter =>
+  (channel, counts) =>
+    channel.inUnit === true ? byManifest(channel, counts) : convert(channel, counts);
+
 /** A session as the record knows it. `ended` is null while it is being recorded. */
 export interface SessionRow {
   readonly id: number;
@@ -71,7 +77,7 @@ export class RecordReader implements SeriesStore {
 
   constructor(db: Database.Database, convert: Converter) {
     this.#db = db;
-    this.#convert = convert;
+    this.#convert = keepingUnits(convert);
     this.#manifests = new Manifests(db);
   }
 
@@ -85,7 +91,7 @@ export class RecordReader implements SeriesStore {
     signal?: AbortSignal,
     convert: Converter = this.#convert,
   ): Promise<SeriesAnswer> {
-    return answerSeries({ ...this.#parts(), convert }, query, signal);
+    return answerSeries({ ...this.#parts(), convert: keepingUnits(convert) }, query, signal);
   }
 
   /**

@@ -51,8 +51,8 @@ export const ROOMS_TABLE: readonly Room[] = [
   },
   {
     path: "daemon/record",
-    rooms: [MODEL, "daemon/judge/records.ts", "daemon/paths.ts"],
-    packages: ["node:*", "better-sqlite3", "influx"],
+    rooms: [MODEL, "daemon/judge/records.ts", "daemon/control/lines.ts", "daemon/paths.ts"],
+    packages: ["node:*", "better-sqlite3", "hyparquet", "hyparquet-writer", "influx", "zod"],
   },
   {
     path: "daemon/desk",
