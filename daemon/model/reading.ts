@@ -18,9 +18,6 @@ export const TYPED = "typed";
 /** Channels of witnesses are asked for as `witness.NAME`. */
 const PREFIX = "witness.";
 
-/** The channel that a witness is recorded as. */
-export const witnessChannel = (name: string): string => `${PREFIX}${name}`;
-
 /** The witness behind a channel's name, or null where the channel is none. */
 export const witnessOf = (channel: string): string | null =>
   channel.startsWith(PREFIX) ? channel.slice(PREFIX.length) : null;
