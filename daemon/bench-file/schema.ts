@@ -169,6 +169,7 @@ const influxSchema = section("a map that says which server keeps the record a se
   ),
   "ca-file": line("the path of a PEM file", /^\S{1,200}$/, ""),
   "credentials-file": line("the path of a file of mode 0600", /^\S{1,200}$/, ""),
+  pages: oneOf("where the pages read older samples", ["record", "influx"], "record"),
 });
 
 const recordSchema = section("a map that says how the record is kept", {

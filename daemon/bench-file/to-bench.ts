@@ -149,6 +149,7 @@ function recordOf({ record }: BenchFile): RecordPart {
       keep_ms: influx.keep,
       caFile: fileOr(influx["ca-file"]),
       credentialsFile: fileOr(influx["credentials-file"]),
+      pages: influx.pages,
     },
   };
 }

@@ -2,6 +2,7 @@ import type { Command } from "commander";
 import { Sessions } from "./answers.ts";
 import { commandOf } from "./command.ts";
 import { formatOf, rateOf, writeExport } from "./export-ways.ts";
+import { fetchMeant, isFromInflux } from "./from-influx.ts";
 import { namesOf, openOrSay, unitOf } from "./record-units.ts";
 import { codeOf, printJson, reasonOf, Trouble } from "./say.ts";
 import { momentOf, sessionNumber } from "./sessions-where.ts";
@@ -13,6 +14,7 @@ interface Options {
   readonly session?: string;
   readonly from?: string;
   readonly to?: string;
+  readonly bench?: string;
   readonly channels?: string;
   readonly format?: string;
   readonly rate?: string;
@@ -30,13 +32,18 @@ export const exportCommand = (): Command =>
       "export night.parquet --session 4 --rate mean:10s",
       "export --on north --json",
       "export - --channels current,case --from 2026-12-01T22:00Z --to 2026-12-02T06:00Z",
+      "export night.csv --from influx --bench bench.yaml --session 4",
     ],
   )
     .argument("[file]", "where to write; - or nothing is standard output")
     .option("--on <name>", "which bench's record, where there are several")
     .option("--data <folder>", "the data folder or a pack, where it is not the usual one")
     .option("--session <number>", "only this session; --json lists their numbers")
-    .option("--from <time>", "from this moment, 2026-12-01T22:00Z")
+    .option(
+      "--from <time>",
+      "from this moment, 2026-12-01T22:00Z; influx reads the server instead, influx:TIME both",
+    )
+    .option("--bench <file>", "with --from influx: the bench file that names the server")
     .option("--to <time>", "up to this moment")
     .option("--channels <names>", "names with commas between, current,case,judge.ceiling")
     .option(
@@ -46,10 +53,24 @@ export const exportCommand = (): Command =>
     .option("--rate <what>", "full, mean:10s or minmax:10s; every sample where left out")
     .option("--units-line", "units on a second header line instead of in brackets")
     .option("--json", "the sessions as one JSON array, instead of samples")
-    .action((file: string | undefined, options: Options) => exportRecord(file ?? "-", options));
+    .action((file: string | undefined, options: Options) => exportFrom(file ?? "-", options));
 
-async function exportRecord(file: string, options: Options): Promise<void> {
-  const folder = options.data ?? recordFolder(options.on);
+async function exportFrom(file: string, options: Options): Promise<void> {
+  if (!isFromInflux(options.from)) {
+    await exportRecord(file, options.data ?? recordFolder(options.on), options);
+    return;
+  }
+  const fetched = await fetchMeant(options);
+  // What was fetched is what was meant; its sessions have other numbers here.
+  const { session: _, from: __, ...rest } = options;
+  try {
+    await exportRecord(file, fetched.folder, rest);
+  } finally {
+    fetched.remove();
+  }
+}
+
+async function exportRecord(file: string, folder: string, options: Options): Promise<void> {
   const { reader, conversions } = openOrSay(folder);
   try {
     if (options.json === true) {

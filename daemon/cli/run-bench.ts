@@ -157,6 +157,7 @@ async function startDesk(
     tokenFile: join(folder, "token"),
     names: [],
     conversions: bench.conversions,
+    ...(bench.record.influx?.pages === "influx" ? { influx: bench.record.influx } : {}),
   };
   const desk = new DeskProcess(config, (words) =>
     supervision.loop.telling.say("desk", "", words, "warn", null, 0, 0),

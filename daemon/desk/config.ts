@@ -1,4 +1,5 @@
 import { z } from "zod";
+import type { InfluxPart } from "../model/bench.ts";
 import type { Conversion } from "../model/conversion.ts";
 
 /** What the daemon hands the desk when starting it, as JSON in the first argument. */
@@ -19,6 +20,8 @@ export const DeskConfig = z.object({
   names: z.array(z.string()).default([]),
   /** How the bench's channels become units, by channel; the board's own scale where left out. */
   conversions: z.record(z.string(), z.custom<Conversion>()).optional(),
+  /** Server from which older samples and events are read instead of from the folder. */
+  influx: z.custom<InfluxPart>().optional(),
   /** Folder of the built pages; the package's own where left out. */
   pages: z.string().optional(),
 });

@@ -1,9 +1,15 @@
 import type { AddressInfo } from "node:net";
 import { setPriority } from "node:os";
+import { join } from "node:path";
 import { SwitchClient } from "../control/client.ts";
+import type { InfluxPart } from "../model/bench.ts";
 import { pagesRoot } from "../paths.ts";
 import { toUnit } from "../physics/convert.ts";
-import { openReader } from "../record/reader.ts";
+import { CREDENTIALS_FILE } from "../record/influx-credentials.ts";
+import { PlaceFile, placeFile } from "../record/influx-place.ts";
+import { InfluxReader } from "../record/influx-reader.ts";
+import { InfluxServer } from "../record/influx-server.ts";
+import { type Converter, openReader } from "../record/reader.ts";
 import { BEAT_ms, DeskConfig, type FromDesk, ToDesk } from "./config.ts";
 import { Live } from "./live.ts";
 import { buildServer } from "./server.ts";
@@ -40,18 +46,31 @@ export async function runDesk(configText: string): Promise<void> {
     push: (push) => live.take(push),
     line: (connected) => live.line(connected),
   });
-  const record = openReader(config.folder, (channel, counts) => {
+  const convert: Converter = (channel, counts) => {
     const conversion = conversions[channel.name];
     return conversion === undefined ? counts * channel.perCount : toUnit(conversion, counts);
-  });
+  };
+  const folder = openReader(config.folder, convert);
+  const record = config.influx === undefined ? folder : homeRecord(config, config.influx, convert);
+  const place = new PlaceFile(placeFile(config.folder));
+  const waiting = (): number | null => {
+    const sent = place.load()?.samples;
+    const kept = folder.sessions().reduce((sum, session) => sum + session.samples, 0);
+    return sent === undefined ? null : Math.max(0, kept - sent);
+  };
   const pages = config.pages ?? pagesRoot;
-  const app = await buildServer({ config, pages, sign, line, live, record });
+  const app = await buildServer({ config, pages, sign, line, live, record, waiting });
   await line.open();
   await app.listen({ host: config.host, port: config.port });
   const { port } = app.server.address() as AddressInfo;
   sign.nameCookieFor(port);
   toParent({ kind: "listening", host: config.host, port });
   setInterval(() => toParent({ kind: "beat", clients: live.pages }), BEAT_ms);
+}
+
+/** The second home, read in place of the folder. */
+function homeRecord({ folder }: DeskConfig, influx: InfluxPart, convert: Converter): InfluxReader {
+  return new InfluxReader(new InfluxServer(influx, join(folder, CREDENTIALS_FILE)), convert);
 }
 
 /** The words of a failed start, for the daemon to print. */

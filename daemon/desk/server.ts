@@ -7,6 +7,7 @@ import type { DeskConfig } from "./config.ts";
 import type { EventSource } from "./event-lines.ts";
 import { addGuard } from "./guarded.ts";
 import type { Live } from "./live.ts";
+import { addMetrics } from "./metrics.ts";
 import { addPages } from "./pages.ts";
 import type { SignIn } from "./sign-in.ts";
 import type { SwitchLine } from "./switch-line.ts";
@@ -24,6 +25,8 @@ export interface DeskParts {
   readonly line: Pick<SwitchLine, "ask" | "connected">;
   readonly live: Live;
   readonly record: RecordPort;
+  /** Samples that the second home does not have yet; null where there is none. */
+  readonly waiting?: () => number | null;
 }
 
 /** Longest body of a request: a current, a cause or a token. */
@@ -57,5 +60,6 @@ export async function buildServer(parts: DeskParts): Promise<FastifyInstance> {
   });
   addPages(app, parts);
   addAnswers(app, parts);
+  addMetrics(app, parts);
   return app;
 }

@@ -164,4 +164,6 @@ export interface InfluxPart {
   readonly caFile: string | null;
   /** File with user and password; null for the one in the data folder. */
   readonly credentialsFile: string | null;
+  /** Where the pages read older samples and events. */
+  readonly pages: "record" | "influx";
 }

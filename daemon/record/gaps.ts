@@ -38,6 +38,22 @@ export function gapsOf(
       .pluck()
       .get({ bench }) as number | null,
   }))();
+  return gapsWithin(read, from, to);
+}
+
+/**
+ * The gaps of a window: those found in it, and its edges before the first and after the last sample
+ * that there is at all (null where there is none).
+ */
+export function gapsWithin(
+  read: {
+    readonly gaps: readonly { readonly a: number; readonly b: number }[];
+    readonly first: number | null;
+    readonly last: number | null;
+  },
+  from: number,
+  to: number,
+): SeriesAnswer["gaps"] {
   const { first, last } = read;
   if (first === null || last === null) return [{ from: wall(from), to: wall(to) }];
   const found = [...read.gaps];

@@ -29,7 +29,9 @@ const COMPILERS = ["gcc", "make"];
 const AVR = ["gcc-avr", "avr-libc", "binutils-avr", "libsimavr-dev", "libelf-dev"];
 
 /** Tests that run a real time-series server; they make a suite of their own. */
-const SERVERS = ["influx-outage", "influx-victoria"].map((name) => `test/process/${name}.test.ts`);
+const SERVERS = ["influx-outage", "influx-reader", "influx-victoria"].map(
+  (name) => `test/process/${name}.test.ts`,
+);
 const withoutServers = SERVERS.flatMap((file) => ["--exclude", file]);
 
 /**

@@ -57,6 +57,7 @@ beforeEach(async () => {
     keep_ms: null,
     caFile: null,
     credentialsFile: null,
+    pages: "record",
   };
 });
 

@@ -108,6 +108,7 @@ export async function influxServer(
     keep_ms: null,
     caFile: ca,
     credentialsFile: credentials,
+    pages: "record",
   };
   const ping = (): Promise<boolean> => answers(`${part.url}/ping`, ca);
   return new RealServer(folder, part, ["influxd", "run", "-config", file], ping);
@@ -124,6 +125,7 @@ export async function victoriaServer(folder: string): Promise<RealServer> {
     keep_ms: null,
     caFile: null,
     credentialsFile: null,
+    pages: "record",
   };
   const command = [
     "victoria-metrics",

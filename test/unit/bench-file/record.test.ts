@@ -15,12 +15,13 @@ describe("where the record is kept a second time", () => {
       keep_ms: null,
       caFile: null,
       credentialsFile: null,
+      pages: "record",
     });
   });
   test("all of its keys", () => {
     const text = withInflux(
       `    url: https://influx.lab/below\n    database: nights\n    server: victoria-metrics\n` +
-        `    keep: 400 d\n    ca-file: /etc/lab.pem\n    credentials-file: /etc/lab.secret\n`,
+        `    keep: 400 d\n    ca-file: /etc/lab.pem\n    credentials-file: /etc/lab.secret\n    pages: influx\n`,
     );
     expect(benchOf(text).record.influx).toEqual({
       url: "https://influx.lab/below",
@@ -29,6 +30,7 @@ describe("where the record is kept a second time", () => {
       keep_ms: 400 * 86_400_000,
       caFile: "/etc/lab.pem",
       credentialsFile: "/etc/lab.secret",
+      pages: "influx",
     });
     expect(differences(benchOf(NORTH), benchOf(text))).toContain(
       "record.influx.url is new: https://influx.lab/below.",
