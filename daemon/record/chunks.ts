@@ -69,15 +69,14 @@ export class ChunkIndex {
     return openStored(stored as Stored | undefined, `block ${chunk.id}`);
   }
 
-  /** Opens a block's one-second rollup; null for a chunk of the tail. */
+  /** Opens the one-second rollup that schema version 1 kept of a block; null where there is none. */
   openRollup(chunk: Chunk): Block | { readonly fault: string } | null {
-    if (chunk.id < 0) return null;
-    const stored = this.#rollup.get(chunk.id);
-    return openStored(stored as Stored | undefined, `the rollup of block ${chunk.id}`);
+    const stored = chunk.id < 0 ? undefined : this.#rollup.get(chunk.id);
+    if (stored === undefined) return null;
+    return openStored(stored as Stored, `the rollup of block ${chunk.id}`);
   }
 }
 
-/** Bytes of a chunk as they are stored. */
 export interface Stored {
   readonly codec: number;
   readonly crc: number;

@@ -5,12 +5,12 @@ import type { ReadParts } from "./reader.ts";
 
 /** Statistics coarser than a second, as a query reads them. */
 export const HOUR_ms = 3_600_000;
-/** A row of `rollup_10s` spans an hour, or a little more where blocks stick out of it. */
+/** A row of `rollups` spans an hour, or a little more where blocks stick out of it. */
 const SPAN_ms_MAX = 2 * HOUR_ms;
 
 export type CoarseRow =
   | {
-      readonly kind: "tens";
+      readonly kind: "packed";
       readonly id: number;
       readonly manifest: number;
       readonly codec: number;
@@ -38,18 +38,28 @@ export function coarseRows(
   reach: Reach,
   level_ms: number,
 ): CoarseRow[] {
-  return level_ms === HOUR_ms ? hourRows(db, query, reach) : tensRows(db, query.bench, reach);
+  return level_ms === HOUR_ms
+    ? hourRows(db, query, reach)
+    : packedRows(db, query.bench, reach, level_ms / 1000);
 }
 
-function tensRows(db: Database.Database, bench: string, { from, to }: Reach): CoarseRow[] {
+function packedRows(
+  db: Database.Database,
+  bench: string,
+  { from, to }: Reach,
+  step_s: number,
+): CoarseRow[] {
   const rows = db
     .prepare(
-      `SELECT id, manifest, codec, crc, blob FROM rollup_10s
-       WHERE t0 >= @from - @span AND t1 >= @from AND t0 < @to
+      `SELECT id, manifest, codec, crc, blob FROM rollups
+       WHERE step_s = @step_s AND t0 >= @from - @span AND t1 >= @from AND t0 < @to
          AND run IN (SELECT id FROM runs WHERE bench = @bench)`,
     )
-    .all({ from, to, bench, span: SPAN_ms_MAX }) as Omit<CoarseRow & { kind: "tens" }, "kind">[];
-  return rows.map((row) => ({ kind: "tens", ...row }));
+    .all({ step_s, from, to, bench, span: SPAN_ms_MAX }) as Omit<
+    CoarseRow & { kind: "packed" },
+    "kind"
+  >[];
+  return rows.map((row) => ({ kind: "packed", ...row }));
 }
 
 function hourRows(db: Database.Database, query: SeriesQuery, { from, to }: Reach): CoarseRow[] {

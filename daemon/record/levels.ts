@@ -7,7 +7,6 @@ import {
   joined,
   packRolled,
   type Rolled,
-  type RowSource,
   rollUp,
   SECOND_COLUMN,
   type Stats,
@@ -15,14 +14,21 @@ import {
 } from "./rollup.ts";
 import type { BlockIdentity } from "./staging.ts";
 
-/** A row of `rollup_10s` spans at most this many steps: an hour. */
-const TENS_MAX = 360;
-/** Blocks without coarser rollups (of an older program, or after a kill) made up for at an opening. */
+/**
+ * The packed levels: a row of each grows with every block, so that few steps do not cost a head of
+ * their own, until it spans ten minutes of seconds or an hour of ten seconds.
+ */
+const PACKED = [
+  { step_s: 1, steps_max: 600 },
+  { step_s: 10, steps_max: 360 },
+] as const;
+/** Blocks without rollups (of an older program, or after a kill) made up for at once. */
 const UNROLLED_MAX = 500;
-const TENS_A_MINUTE = 6;
+const SECONDS_A_MINUTE = 60;
 
-/** Ten-second statistics of neighbouring blocks of one session and manifest, as one row. */
-export interface TensRow extends Omit<BlockIdentity, "block" | "benchFile"> {
+/** Statistics of neighbouring blocks of one session and manifest, as one row of `rollups`. */
+export interface RollupRow extends Omit<BlockIdentity, "block" | "benchFile"> {
+  readonly step_s: number;
   readonly block0: number;
   readonly block1: number;
   readonly t0: number;
@@ -51,69 +57,86 @@ interface Span extends BlockIdentity {
   readonly t1: number;
 }
 
-/** What a block brings to each level, and the growing row of ten-second statistics. */
+/** A row of one packed level that grows. */
+class Growing {
+  readonly step_s: number;
+  readonly #steps_max: number;
+  #row: { first: Span; last: Span; t0: number; t1: number; rolled: Rolled } | null = null;
+  #isWritten = true;
+
+  constructor({ step_s, steps_max }: (typeof PACKED)[number]) {
+    this.step_s = step_s;
+    this.#steps_max = steps_max;
+  }
+
+  /** Takes a block's statistics. What it answers is whole now, and to be written. */
+  add(span: Span, rolled: Rolled): RollupRow | null {
+    const before = this.#row;
+    const both = before !== null && this.#fits(before, span, rolled);
+    const grown = both ? joined(before.rolled, rolled) : null;
+    const sealed = grown === null ? this.row() : null;
+    this.#isWritten = false;
+    if (before === null || grown === null) {
+      this.#row = { first: span, last: span, t0: span.t0, t1: span.t1, rolled };
+    } else {
+      const t1 = Math.max(before.t1, span.t1);
+      this.#row = { ...before, last: span, t0: Math.min(before.t0, span.t0), t1, rolled: grown };
+    }
+    return sealed;
+  }
+
+  #fits({ last, rolled: before }: { last: Span; rolled: Rolled }, span: Span, next: Rolled) {
+    return (
+      last.session === span.session &&
+      last.run === span.run &&
+      last.manifest === span.manifest &&
+      before.steps.length + next.steps.length <= this.#steps_max
+    );
+  }
+
+  /** The row as it is; null where all of it was written. */
+  row(): RollupRow | null {
+    if (this.#row === null || this.#isWritten) return null;
+    const { first, last, t0, t1, rolled } = this.#row;
+    const { session, run, manifest } = first;
+    const bounds = { block0: first.block, block1: last.block, t0, t1, n: rolled.steps.length };
+    return { step_s: this.step_s, session, run, manifest, ...bounds, coded: packRolled(rolled) };
+  }
+
+  wrote(): void {
+    this.#isWritten = true;
+  }
+}
+
+/** What a block brings to each level of rollups, and the rows that grow. */
 export class Levels {
   readonly #channelId: ChannelId;
-  #tens: { first: Span; last: Span; t0: number; t1: number; rolled: Rolled } | null = null;
-  #written = true;
+  readonly #growing = PACKED.map((level) => new Growing(level));
 
   constructor(channelId: ChannelId) {
     this.#channelId = channelId;
   }
 
-  /**
-   * Takes a whole block. `sealed` is a row of tens that will not grow any more; it is to be written
-   * before the one that `growing` gives later.
-   */
+  /** Takes a whole block. `sealed` are rows that will not grow any more, to be written. */
   add(
-    span: Span,
-    source: RowSource,
-    manifest: Manifest,
-  ): { seconds: Coded; minutes: MinuteStats[]; sealed: TensRow | null } {
-    const seconds = rollUp(source, manifest);
-    return { seconds: packRolled(seconds), ...this.addSeconds(span, seconds, manifest) };
-  }
-
-  /** `add` for a block whose one-second statistics are there already. */
-  addSeconds(
     span: Span,
     seconds: Rolled,
     manifest: Manifest,
-  ): { minutes: MinuteStats[]; sealed: TensRow | null } {
-    const rolled = coarser(seconds, 10);
-    const minutes = minutesOf(rolled, manifest, this.#channelId);
-    const before = this.#tens;
-    const fits =
-      before !== null &&
-      before.last.session === span.session &&
-      before.last.run === span.run &&
-      before.last.manifest === span.manifest &&
-      before.rolled.steps.length + rolled.steps.length <= TENS_MAX;
-    const both = fits ? joined(before.rolled, rolled) : null;
-    if (before !== null && both !== null) {
-      const t1 = Math.max(before.t1, span.t1);
-      this.#tens = { ...before, last: span, t0: Math.min(before.t0, span.t0), t1, rolled: both };
-      this.#written = false;
-      return { minutes, sealed: null };
-    }
-    const sealed = this.growing();
-    this.#tens = { first: span, last: span, t0: span.t0, t1: span.t1, rolled };
-    this.#written = false;
-    return { minutes, sealed };
+  ): { minutes: MinuteStats[]; sealed: RollupRow[] } {
+    const sealed = this.#growing.map((level) => level.add(span, coarser(seconds, level.step_s)));
+    return {
+      minutes: minutesOf(seconds, manifest, this.#channelId),
+      sealed: sealed.filter((row) => row !== null),
+    };
   }
 
-  /** The row that still grows, where it has grown since `wrote` was called last. */
-  growing(): TensRow | null {
-    const tens = this.#tens;
-    if (tens === null || this.#written) return null;
-    const { session, run, manifest } = tens.first;
-    const bounds = { block0: tens.first.block, block1: tens.last.block, t0: tens.t0, t1: tens.t1 };
-    const n = tens.rolled.steps.length;
-    return { session, run, manifest, ...bounds, n, coded: packRolled(tens.rolled) };
+  /** The rows that still grow and have grown since `wrote` was called last. */
+  growing(): RollupRow[] {
+    return this.#growing.map((level) => level.row()).filter((row) => row !== null);
   }
 
   wrote(): void {
-    this.#written = true;
+    for (const level of this.#growing) level.wrote();
   }
 }
 
@@ -121,8 +144,8 @@ export class Levels {
 const hasMean = ({ channel }: ChannelPlace): boolean =>
   channel.unit !== "code" && channel.unit !== "bits";
 
-function minutesOf(tens: Rolled, manifest: Manifest, channelId: ChannelId): MinuteStats[] {
-  const { steps, stats } = coarser(tens, TENS_A_MINUTE);
+function minutesOf(seconds: Rolled, manifest: Manifest, channelId: ChannelId): MinuteStats[] {
+  const { steps, stats } = coarser(seconds, SECONDS_A_MINUTE);
   const byColumn = new Map(stats.map((s) => [s.column, s]));
   const found: MinuteStats[] = [];
   for (const place of placesOf(manifest).filter(hasMean)) {
@@ -148,11 +171,14 @@ export const upsertStats = (table: "rollup_1min" | "rollup_1h", step: "minute" |
      mean = mean + (excluded.mean - mean) * excluded.n / (n + excluded.n),
      n = n + excluded.n, min = min(min, excluded.min), max = max(max, excluded.max)`;
 
-export const INSERT_TENS = `INSERT OR REPLACE INTO rollup_10s (id, block0, block1, session, run,
-  manifest, t0, t1, n, codec, crc, blob) VALUES (?,?,?,?,?,?,?,?,?,?,?,?)`;
+export const UPSERT_ROLLUP = `INSERT INTO rollups (step_s, block0, block1, session, run, manifest,
+  t0, t1, n, codec, crc, blob) VALUES (?,?,?,?,?,?,?,?,?,?,?,?)
+  ON CONFLICT (step_s, block0) DO UPDATE SET block1 = excluded.block1, t0 = excluded.t0,
+    t1 = excluded.t1, n = excluded.n, codec = excluded.codec, crc = excluded.crc,
+    blob = excluded.blob`;
 
-export const tensValues = (r: TensRow): unknown[] => [
-  ...[r.block0, r.block0, r.block1, r.session, r.run, r.manifest, r.t0, r.t1, r.n],
+export const rollupValues = (r: RollupRow): unknown[] => [
+  ...[r.step_s, r.block0, r.block1, r.session, r.run, r.manifest, r.t0, r.t1, r.n],
   ...[r.coded.codec, r.coded.crc, r.coded.blob],
 ];
 
@@ -163,54 +189,100 @@ export const statsValues = (m: MinuteStats, step: "minute" | "hour"): number[] =
 ];
 
 interface UnrolledRow extends Span {
+  readonly bench: string;
   readonly json: string;
+}
+
+interface Stored {
   readonly codec: number;
   readonly crc: number;
   readonly blob: Uint8Array;
 }
 
 /**
- * Makes the coarser rollups of blocks that have none, from their one-second rollups: after a kill,
- * and for an older program's. At most UNROLLED_MAX at once; others are read from seconds meanwhile.
+ * Makes the rollups of blocks that have none, or only those of schema version 1: after a kill, for an
+ * older program's, for a session from elsewhere. Of at most UNROLLED_MAX at once; answers of how
+ * many. Until then they are read from their samples.
  */
-export function rollUnrolled(db: Database.Database, channelId: (bench: string) => ChannelId): void {
+export function rollUnrolled(
+  db: Database.Database,
+  channelId: (bench: string) => ChannelId,
+): number {
   const rows = db
     .prepare(
       `SELECT b.id AS block, b.session, b.run, b.t0, b.t1, b.manifest, b.bench_file AS benchFile,
-         u.bench, m.json, r.codec, r.crc, r.blob
-       FROM blocks b JOIN rollup_1s r ON r.block = b.id JOIN runs u ON u.id = b.run
-       JOIN manifests m ON m.id = b.manifest WHERE b.rolled = 0 ORDER BY b.id LIMIT ?`,
+         u.bench, m.json
+       FROM blocks b JOIN runs u ON u.id = b.run JOIN manifests m ON m.id = b.manifest
+       WHERE b.rolled = 0 ORDER BY b.id LIMIT ?`,
     )
-    .all(UNROLLED_MAX) as (UnrolledRow & { bench: string })[];
-  if (rows.length === 0) return;
-  const tens = db.prepare(INSERT_TENS);
-  const minute = db.prepare(upsertStats("rollup_1min", "minute"));
-  const hour = db.prepare(upsertStats("rollup_1h", "hour"));
-  const done = db.prepare("UPDATE blocks SET rolled = 1 WHERE id = ?");
-  for (const bench of new Set(rows.map((row) => row.bench))) {
-    const levels = new Levels(channelId(bench));
-    const write = (row: TensRow | null): void => {
-      if (row !== null) tens.run(...tensValues(row));
-    };
-    for (const row of rows.filter((r) => r.bench === bench)) {
-      const manifest = JSON.parse(row.json) as Manifest;
-      const seconds = storedSeconds(row, manifest);
-      if (seconds === null) continue;
-      const { minutes, sealed } = levels.addSeconds(row, seconds, manifest);
-      write(sealed);
-      for (const m of minutes) {
-        minute.run(...statsValues(m, "minute"));
-        hour.run(...statsValues(m, "hour"));
-      }
-      done.run(row.block);
-    }
-    write(levels.growing());
+    .all(UNROLLED_MAX) as UnrolledRow[];
+  const benches = new Map<string, Levels>();
+  let count = 0;
+  for (const row of rows) {
+    const levels = benches.get(row.bench) ?? new Levels(channelId(row.bench));
+    benches.set(row.bench, levels);
+    if (rollOne(db, row, levels)) count++;
+  }
+  const upsert = db.prepare(UPSERT_ROLLUP);
+  for (const levels of benches.values()) {
+    for (const row of levels.growing()) upsert.run(...rollupValues(row));
+  }
+  return count;
+}
+
+/** Makes the minute's and hour's statistics of a session that came with its packed rollups. */
+export function rollMinutes(
+  db: Database.Database,
+  session: number,
+  channelId: (bench: string) => ChannelId,
+): void {
+  const rows = db
+    .prepare(
+      `SELECT u.bench, m.json, r.codec, r.crc, r.blob FROM rollups r JOIN runs u ON u.id = r.run
+       JOIN manifests m ON m.id = r.manifest WHERE r.step_s = 1 AND r.session = ?`,
+    )
+    .all(session) as (Stored & { readonly bench: string; readonly json: string })[];
+  for (const row of rows) {
+    const manifest = JSON.parse(row.json) as Manifest;
+    const block = Block.open(row.codec, row.crc, row.blob);
+    const seconds = "fault" in block ? null : rolledFrom(block, manifest);
+    if (seconds !== null) addMinutes(db, minutesOf(seconds, manifest, channelId(row.bench)));
   }
 }
 
-function storedSeconds(row: UnrolledRow, manifest: Manifest): Rolled | null {
-  const block = Block.open(row.codec, row.crc, row.blob);
+function addMinutes(db: Database.Database, minutes: readonly MinuteStats[]): void {
+  const minute = db.prepare(upsertStats("rollup_1min", "minute"));
+  const hour = db.prepare(upsertStats("rollup_1h", "hour"));
+  for (const m of minutes) {
+    minute.run(...statsValues(m, "minute"));
+    hour.run(...statsValues(m, "hour"));
+  }
+}
+
+function rollOne(db: Database.Database, row: UnrolledRow, levels: Levels): boolean {
+  const manifest = JSON.parse(row.json) as Manifest;
+  const seconds = storedSeconds(db, row.block, manifest);
+  if (seconds === null) return false;
+  const { minutes, sealed } = levels.add(row, seconds, manifest);
+  const upsert = db.prepare(UPSERT_ROLLUP);
+  for (const whole of sealed) upsert.run(...rollupValues(whole));
+  addMinutes(db, minutes);
+  db.prepare("DELETE FROM rollup_1s WHERE block = ?").run(row.block);
+  db.prepare("UPDATE blocks SET rolled = 1 WHERE id = ?").run(row.block);
+  return true;
+}
+
+/** A block's one-second statistics, as version 1 kept them or from its samples. */
+function storedSeconds(db: Database.Database, id: number, manifest: Manifest): Rolled | null {
+  const kept = db.prepare("SELECT codec, crc, blob FROM rollup_1s WHERE block = ?").get(id);
+  const own = kept ?? db.prepare("SELECT codec, crc, blob FROM blocks WHERE id = ?").get(id);
+  const { codec, crc, blob } = own as Stored;
+  const block = Block.open(codec, crc, blob);
   if ("fault" in block) return null;
+  return kept === undefined ? rollUp(block, manifest) : rolledFrom(block, manifest);
+}
+
+function rolledFrom(block: Block, manifest: Manifest): Rolled | null {
   const steps = block.column(SECOND_COLUMN);
   if (steps === null) return null;
   const none = new Float64Array(steps.length);

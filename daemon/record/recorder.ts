@@ -12,6 +12,7 @@ import { encodeColumns, packColumns } from "./blocks.ts";
 import { latchAfter } from "./latch.ts";
 import { Levels } from "./levels.ts";
 import { problemOf } from "./problem.ts";
+import { rollUp } from "./rollup.ts";
 import { Staging } from "./staging.ts";
 import { Store, type StoredRows, type StoreOptions, type WriteOp } from "./store.ts";
 
@@ -38,10 +39,7 @@ export interface RecorderOptions extends StoreOptions {
   readonly wall_ms?: () => number;
 }
 
-interface Boundary {
-  readonly ringRow: number;
-  readonly apply: () => void;
-}
+type Boundary = { readonly ringRow: number; readonly apply: () => void };
 
 /**
  * Reads the ring and the messages of the judging thread and keeps them. The worker runs it live;
@@ -304,8 +302,8 @@ export class Recorder {
     const before = this.#lastWall;
     this.#lastWall = wall;
     if (before === null || wall - before <= gapAfter_ms(rate_perS)) return;
-    const span = { from_wall_ms: before, to_wall_ms: wall };
-    this.#pending.push({ op: "gap", bench: this.#options.bench, ...span });
+    const { bench } = this.#options;
+    this.#pending.push({ op: "gap", bench, from_wall_ms: before, to_wall_ms: wall });
   }
 
   /** Rows from `from` on, whole blocks packed, chunks of the tail as they are. */
@@ -328,11 +326,10 @@ export class Recorder {
     if (staging === null || staging.n === 0) return;
     const rows = this.#rowsOf(staging, 0, packColumns);
     if (rows !== null) {
-      const source = { n: staging.n, column: (id: number) => staging.column(id) };
-      const { seconds, minutes, sealed } = this.#levels.add(rows, source, staging.manifest);
-      const unseen = staging.n - this.#storedRows;
-      this.#pending.push({ op: "block", rows, rollup: seconds, minutes, unseen });
-      if (sealed !== null) this.#pending.push({ op: "tens", row: sealed });
+      const seconds = rollUp(staging, staging.manifest);
+      const { minutes, sealed } = this.#levels.add(rows, seconds, staging.manifest);
+      this.#pending.push({ op: "block", rows, minutes, unseen: staging.n - this.#storedRows });
+      for (const row of sealed) this.#pending.push({ op: "rollup", row });
       this.#blocksWaiting++;
     }
     staging.clear();
@@ -353,8 +350,7 @@ export class Recorder {
     const rows = unstored ? this.#rowsOf(staging, this.#storedRows, encodeColumns) : null;
     const ops = [...this.#pending];
     if (rows !== null) ops.push({ op: "tail", rows });
-    const tens = this.#levels.growing();
-    if (tens !== null) ops.push({ op: "tens", row: tens });
+    for (const row of this.#levels.growing()) ops.push({ op: "rollup", row });
     const samples = this.#lostRows;
     if (samples > this.#lostTold) ops.push({ op: "lost", run: this.#run, samples });
     try {

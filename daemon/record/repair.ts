@@ -1,7 +1,6 @@
 import type Database from "better-sqlite3";
 import type { Manifest } from "../model/manifest.ts";
 import { Block, packColumns } from "./blocks.ts";
-import { packRolled, rollUp } from "./rollup.ts";
 import { Staging } from "./staging.ts";
 
 interface TailRow {
@@ -48,16 +47,11 @@ function packGroup(db: Database.Database, group: readonly TailRow[], faults: str
   if (staging.n === 0) return;
   const { t0, t1, input0, input1 } = staging.bounds(0, staging.n);
   const coded = packColumns(staging.columns, 0, staging.n);
-  const source = { n: staging.n, column: (id: number) => staging.column(id) };
-  const rollup = packRolled(rollUp(source, manifest));
   db.prepare(
     `INSERT INTO blocks (id, session, run, t0, t1, input0, input1, n, manifest, bench_file,
      codec, crc, blob) VALUES (?,?,?,?,?,?,?,?,?,?,?,?,?)`,
   ).run(
     ...[first.block, first.session, first.run, t0, t1, input0, input1, staging.n],
     ...[first.manifest, first.bench_file, coded.codec, coded.crc, coded.blob],
-  );
-  db.prepare("INSERT INTO rollup_1s (block, codec, crc, blob) VALUES (?,?,?,?)").run(
-    ...[first.block, rollup.codec, rollup.crc, rollup.blob],
   );
 }

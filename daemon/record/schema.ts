@@ -84,15 +84,15 @@ export const MIGRATIONS: readonly string[] = [
   // that a better calibration re-reads them; the views minutes and hours give them in the
   // manifest's units, with the standard deviation, for any SQLite tool. Their t is civil time.
   `
-  CREATE TABLE rollup_10s (
-    id INTEGER PRIMARY KEY, block0 INTEGER NOT NULL, block1 INTEGER NOT NULL,
-    session INTEGER NOT NULL REFERENCES sessions(id), run INTEGER NOT NULL REFERENCES runs(id),
-    manifest INTEGER NOT NULL REFERENCES manifests(id), t0 REAL NOT NULL, t1 REAL NOT NULL,
-    n INTEGER NOT NULL, codec INTEGER NOT NULL, crc INTEGER NOT NULL, blob BLOB NOT NULL
+  CREATE TABLE rollups (
+    id INTEGER PRIMARY KEY, step_s INTEGER NOT NULL, block0 INTEGER NOT NULL,
+    block1 INTEGER NOT NULL, session INTEGER NOT NULL REFERENCES sessions(id),
+    run INTEGER NOT NULL REFERENCES runs(id), manifest INTEGER NOT NULL REFERENCES manifests(id),
+    t0 REAL NOT NULL, t1 REAL NOT NULL, n INTEGER NOT NULL,
+    codec INTEGER NOT NULL, crc INTEGER NOT NULL, blob BLOB NOT NULL, UNIQUE (step_s, block0)
   );
-  CREATE INDEX rollup_10s_t0 ON rollup_10s(t0);
-  CREATE INDEX rollup_10s_block ON rollup_10s(block0);
-  -- 1 where the coarser rollups have the block too.
+  CREATE INDEX rollups_t0 ON rollups(step_s, t0);
+  -- 1 where the rollups have the block.
   ALTER TABLE blocks ADD COLUMN rolled INTEGER NOT NULL DEFAULT 0;
   CREATE INDEX blocks_unrolled ON blocks(t0) WHERE rolled = 0;
   CREATE TABLE channels (

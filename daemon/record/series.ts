@@ -60,9 +60,9 @@ async function answerAt(
     index: new ChunkIndex(parts.db, {
       bench: query.bench,
       ...reach,
-      ...(level_ms > SECOND_ms ? { unrolled: true } : {}),
+      ...(level_ms > 0 ? { unrolled: true } : {}),
     }),
-    coarse: level_ms > SECOND_ms ? coarseRows(parts.db, query, reach, level_ms) : [],
+    coarse: level_ms > 0 ? coarseRows(parts.db, query, reach, level_ms) : [],
   }))();
   if (level_ms === 0 && index.chunks.some((chunk) => chunk.retired === 1)) return null;
   const singles = level_ms === 0 && samplesOf(index) <= SINGLES_A_PIXEL * Math.max(1, query.pixels);
@@ -73,7 +73,7 @@ async function answerAt(
     ]),
   );
   const work = [
-    ...coarse.map((row) => () => gatherCoarse(parts, row, gatherers)),
+    ...coarse.map((row) => () => gatherCoarse(parts, row, level_ms, gatherers)),
     ...index.chunks.map((chunk) => () => {
       gatherChunk(parts, index, chunk, gatherers, level_ms > 0);
     }),
@@ -116,6 +116,7 @@ function gatherReadings(
 function gatherCoarse(
   parts: ReadParts,
   row: CoarseRow,
+  level_ms: number,
   gatherers: ReadonlyMap<string, Gatherer>,
 ): void {
   if (row.kind === "hours") {
@@ -129,13 +130,13 @@ function gatherCoarse(
   }
   const block = Block.open(row.codec, row.crc, row.blob);
   if ("fault" in block) {
-    parts.faults.add(`the ten-second rollup ${row.id} cannot be read: ${block.fault}`);
+    parts.faults.add(`the rollup ${row.id} cannot be read: ${block.fault}`);
     return;
   }
   const manifest = parts.manifests.of(row.manifest);
   for (const [name, gatherer] of gatherers) {
     const place = placeOf(manifest, name);
-    if (place !== null) gatherRollup(block, place, parts.convert, gatherer, TEN_SECONDS_ms);
+    if (place !== null) gatherRollup(block, place, parts.convert, gatherer, level_ms);
   }
 }
 

@@ -56,7 +56,7 @@ const PARTS: readonly Part[] = [
     key: "block",
     where: "block IN (SELECT id FROM blocks WHERE session = @session)",
   },
-  { table: "rollup_10s", key: "id", where: "session = @session" },
+  { table: "rollups", key: "id", where: "session = @session" },
   {
     table: "events",
     key: "id",

@@ -8,12 +8,14 @@ import type { ChannelPlace } from "./columns.ts";
 import { closeWritten, type FolderLock, lockFolder, openForWriting } from "./folder.ts";
 import { type LatchRow, latchFrom } from "./latch.ts";
 import {
-  INSERT_TENS,
+  type ChannelId,
   type MinuteStats,
+  type RollupRow,
+  rollMinutes,
   rollUnrolled,
+  rollupValues,
   statsValues,
-  type TensRow,
-  tensValues,
+  UPSERT_ROLLUP,
   upsertStats,
 } from "./levels.ts";
 import { errorCode, problemOf } from "./problem.ts";
@@ -62,15 +64,14 @@ export type WriteOp =
       readonly manifest: number | null;
     }
   | { readonly op: "tail"; readonly rows: StoredRows }
-  /** `unseen` of its rows were in no chunk of the tail; its row of tens is in the same write. */
+  /** `unseen` of its rows were in no chunk of the tail; its rollups are in the same write. */
   | {
       readonly op: "block";
       readonly rows: StoredRows;
-      readonly rollup: Coded;
       readonly minutes: readonly MinuteStats[];
       readonly unseen: number;
     }
-  | { readonly op: "tens"; readonly row: TensRow }
+  | { readonly op: "rollup"; readonly row: RollupRow }
   | { readonly op: "channel"; readonly id: number; readonly key: ChannelKey }
   | {
       readonly op: "gap";
@@ -103,11 +104,10 @@ const STATEMENTS = {
     WHERE id = ?`,
   block: `INSERT INTO blocks (id, session, run, t0, t1, input0, input1, n, manifest, bench_file,
     codec, crc, blob, rolled) VALUES (?,?,?,?,?,?,?,?,?,?,?,?,?,1)`,
-  tens: INSERT_TENS,
+  rollup: UPSERT_ROLLUP,
   minute: upsertStats("rollup_1min", "minute"),
   hour: upsertStats("rollup_1h", "hour"),
   channel: "INSERT INTO channels (id, bench, name, unit, per_count) VALUES (?,?,?,?,?)",
-  rollup: "INSERT INTO rollup_1s (block, codec, crc, blob) VALUES (?,?,?,?)",
   tailDone: "DELETE FROM tail WHERE block = ?",
   gap: "INSERT INTO gaps (bench, from_wall_ms, to_wall_ms) VALUES (?,?,?)",
   lost: "UPDATE runs SET lost_samples = ? WHERE id = ?",
@@ -156,14 +156,7 @@ export class Store {
     this.#channels = new Map(
       (channels.raw().all() as ChannelRow[]).map(([id, ...key]) => [JSON.stringify(key), id]),
     );
-    db.transaction(() => {
-      rollUnrolled(db, (bench) => (place) => {
-        const ops: WriteOp[] = [];
-        const id = this.channelId(bench, place, ops);
-        for (const op of ops) this.#apply(op);
-        return id;
-      });
-    }).immediate();
+    this.rollUp();
   }
 
   /**
@@ -221,6 +214,27 @@ export class Store {
   channelId(bench: string, { channel }: ChannelPlace, ops: WriteOp[]): number {
     const key = JSON.stringify([bench, channel.name, channel.unit, channel.perCount]);
     return idOf(this.#channels, key, (id) => ops.push({ op: "channel", id, key }));
+  }
+
+  /** Makes rollups of blocks that came without them, of so many at once; answers of how many. */
+  rollUp(): number {
+    const roll = (): number => rollUnrolled(this.#db, (bench) => this.#channelsOf(bench));
+    return this.#db.transaction(roll).immediate();
+  }
+
+  /** Makes the minute's and hour's statistics of a session that came with its other rollups. */
+  rollMinutes(session: number): void {
+    const roll = (): void => rollMinutes(this.#db, session, (bench) => this.#channelsOf(bench));
+    this.#db.transaction(roll)();
+  }
+
+  #channelsOf(bench: string): ChannelId {
+    return (place) => {
+      const ops: WriteOp[] = [];
+      const id = this.channelId(bench, place, ops);
+      for (const op of ops) this.#apply(op);
+      return id;
+    };
   }
 
   get lastEventId(): number {
@@ -299,7 +313,6 @@ export class Store {
         break;
       case "block":
         run("block", ...rowValues(op.rows));
-        run("rollup", op.rows.block, op.rollup.codec, op.rollup.crc, op.rollup.blob);
         for (const m of op.minutes) {
           run("minute", ...statsValues(m, "minute"));
           run("hour", ...statsValues(m, "hour"));
@@ -307,8 +320,8 @@ export class Store {
         run("tailDone", op.rows.block);
         run("seen", op.unseen, op.rows.t1, op.rows.session);
         break;
-      case "tens":
-        run("tens", ...tensValues(op.row));
+      case "rollup":
+        run("rollup", ...rollupValues(op.row));
         break;
       case "channel":
         run("channel", op.id, ...(JSON.parse(op.key) as (string | number)[]));

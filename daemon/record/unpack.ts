@@ -253,9 +253,10 @@ function finish(
   numbers: Numbers,
 ): void {
   const kind = from.prepare("SELECT kind FROM sessions WHERE id = ?").pluck().get(place.session);
-  store.within((record) =>
-    record.prepare("UPDATE sessions SET kind = ? WHERE id = ?").run(kind, numbers.session),
-  );
+  store.within((record) => {
+    record.prepare("UPDATE sessions SET kind = ? WHERE id = ?").run(kind, numbers.session);
+    store.rollMinutes(numbers.session);
+  });
 }
 
 /** Takes away what a daemon that was killed meanwhile had brought in so far. */
@@ -278,7 +279,7 @@ function removeRun(record: Database.Database, run: number): void {
   const blocks = "SELECT id FROM blocks WHERE run = @run";
   const sessions = "SELECT id FROM sessions WHERE run = @run";
   remove("rollup_1s", `block IN (${blocks})`);
-  remove("rollup_10s", "run = @run");
+  remove("rollups", "run = @run");
   remove("blocks", "run = @run");
   remove("events", "run = @run");
   remove("journal", "run = @run");

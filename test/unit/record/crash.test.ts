@@ -71,9 +71,12 @@ describe("a folder as it stood after any commit", () => {
       expect(numbersOf(copy, 1)).toEqual(wanted);
       rolled.push(countRolled(copy));
       const db = new Database(`${copy}/record.sqlite`, { readonly: true });
-      const count = (table: string): unknown =>
-        db.prepare(`SELECT count(*) FROM ${table}`).pluck().get();
-      expect([count("tail"), count("rollup_1s")]).toEqual([0, count("blocks")]);
+      const one = (sql: string): unknown => db.prepare(sql).pluck().get();
+      expect(one("SELECT count(*) FROM tail")).toBe(0);
+      expect(one("SELECT count(*) FROM blocks WHERE rolled = 0")).toBe(0);
+      for (const table of ["minutes", "hours"]) {
+        expect(one(`SELECT sum(n) FROM ${table} WHERE name = 'current'`)).toBe(rows);
+      }
       expect(db.prepare("SELECT samples, ended_wall_ms FROM sessions").get()).toEqual({
         samples: rows,
         ended_wall_ms: START_ms + (rows - 1) * 50,

@@ -47,7 +47,7 @@ describe("a record of schema version 1", () => {
     const before = readFileSync(file);
     expect(inputs()).toEqual(made());
     const db = openForReading(scratch.folder);
-    for (const table of ["notes", "tags", "minutes", "hours", "rollup_10s", "exported"]) {
+    for (const table of ["notes", "tags", "minutes", "hours", "rollups", "exported"]) {
       expect(db.prepare(`SELECT count(*) FROM ${table}`).pluck().get()).toBe(0);
     }
     db.close();

@@ -19,7 +19,7 @@ beforeAll(() => {
 });
 afterAll(() => scratch.remove());
 
-test.each(["blocks", "rollup_1s"])(
+test.each(["blocks", "rollups"])(
   "a reader in Python, made from BLOCKS.md alone, reads every column of %s",
   (table) => {
     const printed = execFileSync("python3", [reader, recordFile(scratch.folder), table], {
