@@ -27,9 +27,19 @@ export const buildSimulator = (): string => {
   return make(BOARD_FOLDER);
 };
 
+/** Builds runner and the firmware of a folder of tests; returns the path of what was built. */
+export const buildOther = (folder: string, file: string): string => {
+  make(RUNNER_FOLDER);
+  make(`${packageRoot}/test/hardware/${folder}`);
+  return `${packageRoot}/test/hardware/${folder}/build/${file}`;
+};
+
 /** A runner process; `arguments_` go behind the firmware's path. */
-export const spawnRunner = (arguments_: readonly string[]): ChildProcessWithoutNullStreams =>
-  spawn(RUNNER, [FIRMWARE, ...arguments_], { stdio: ["pipe", "pipe", "pipe"] });
+export const spawnRunner = (
+  arguments_: readonly string[],
+  firmware: string = FIRMWARE,
+): ChildProcessWithoutNullStreams =>
+  spawn(RUNNER, [firmware, ...arguments_], { stdio: ["pipe", "pipe", "pipe"] });
 
 /** The pins that make light, at one moment. */
 export interface Output {
@@ -85,8 +95,9 @@ export class Simulator {
   #lines: string[] = [];
   #stderr = "";
 
-  constructor() {
-    this.#child = spawnRunner([]);
+  /** @param firmware another firmware than the board's own, as `buildOther` gives it */
+  constructor(firmware?: string) {
+    this.#child = spawnRunner([], firmware);
     createInterface({ input: this.#child.stdout }).on("line", (line) => {
       const waiting = this.#waiting;
       this.#waiting = null;
