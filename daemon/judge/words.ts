@@ -108,7 +108,7 @@ export function nextSentence(names: SentenceNames, view: View, age_ms: number): 
     return "It is being looked for; when it answers it starts dark.";
   if (age_ms >= SILENT_ms) return "Look at the cable and at the board's supply.";
   if (view.state === STATE.standby) {
-    return `At this case it may have ${atMost(view.ceiling_mA)}; ${makerWords(view)} makes that ceiling.`;
+    return `At this case temperature it may have ${atMost(view.ceiling_mA)}; ${makerWords(view)} makes that ceiling.`;
   }
   if ((view.flags & FLAG.capped) !== 0) {
     return `It comes back toward ${amps(view.asked_mA)} by itself once the case has stayed cooler.`;
@@ -186,7 +186,7 @@ export function eventWords(kind: EventKind, hazard: number, a: number, b: number
       };
     case "warning-over":
       return {
-        words: `No longer: ${warningReason(hazard)}${overNumber(hazard, a)}.`,
+        words: overWords(hazard, a),
         weight: "calm",
       };
     case "capped":
@@ -260,9 +260,12 @@ function against(hazard: number, a: number, b: number): string {
   return `${inUnit(row, a)}, and ${inUnit(row, b)} is where it warns`;
 }
 
-function overNumber(hazard: number, a: number): string {
+/** A warning's end. Of a gap, the number is how long it was; of the others, where they stand now. */
+function overWords(hazard: number, a: number): string {
   const row = rowOfEvent(hazard);
-  return row === undefined || Number.isNaN(a) ? "" : `; now ${inUnit(row, a)}`;
+  if (row?.id === "sample-gap") return `Samples come again, after ${duration(a)} without one.`;
+  const value = row === undefined || Number.isNaN(a) ? "" : inUnit(row, a);
+  return `No longer: ${warningReason(hazard)}${value === "" ? "" : `; now ${value}`}.`;
 }
 
 function tripNumbers(hazard: number, a: number, b: number): string {

@@ -168,7 +168,16 @@ describe("events", () => {
     expect(plain(eventWords("warning", 64, 42.3, 42).words)).toBe(
       "The case is warm: 42.3 °C, and 42.0 °C is where it warns.",
     );
+    expect(plain(eventWords("warning-over", 64, 39.9, 42).words)).toBe(
+      "No longer: the case is warm; now 39.9 °C.",
+    );
     expect(eventWords("warning-over", 64, 39.9, 42).weight).toBe("calm");
+  });
+
+  test("the end of a gap tells how long it was, which is no value of now", () => {
+    expect(plain(eventWords("warning-over", 71, 204, 125).words)).toBe(
+      "Samples come again, after 204 ms without one.",
+    );
   });
 
   test("the others", () => {
