@@ -11,6 +11,7 @@ import { Initiated } from "./answers.ts";
 import { commandOf } from "./command.ts";
 import { type Answers, collect, toInit } from "./init-answers.ts";
 import { QUESTIONS } from "./init-questions.ts";
+import { readGuess } from "./read-guess.ts";
 import { readManifest, toldBy } from "./read-manifest.ts";
 import { codeOf, EXIT, print, printJson, reasonOf, Trouble } from "./say.ts";
 
@@ -30,12 +31,14 @@ export function initCommand(): Command {
     [
       "init bench.yaml",
       "init bench.yaml --port /dev/ttyUSB0",
+      "init bench.yaml --guess heard.json",
       "init bench.yaml --wavelength 808nm --threshold 0.4A --slope 1.05W/A --current 1.8A --absolute 2.2A",
     ],
     "Each question is an option too. At a terminal the rest is asked; elsewhere it is taken as usual.",
   )
     .argument("[file]", "where to write it", "bench.yaml")
     .option("--port <port>", "read the introduction of the board on this port first")
+    .option("--guess <file>", "begin from what `listen PORT --guess --json` printed")
     .option("--force", "write over a file that is there")
     .option("--json", "one JSON object {file, bench, hints, next}");
   for (const { key, ask, usual } of QUESTIONS) {
@@ -55,7 +58,9 @@ async function init(file: string, options: Options): Promise<void> {
     const manifest = await readManifest(options.port, rate.value);
     Object.assign(told, toldBy(manifest), { path: options.port, baud });
   }
-  const answers = toInit(await collect(given, told), null);
+  const guess = options.guess === undefined ? null : readGuess(options.guess);
+  Object.assign(told, guess?.told);
+  const answers = toInit(await collect(given, told), guess?.stream ?? null);
   const wrong = contradictions(answers);
   if (wrong.length > 0) {
     throw new Trouble(

@@ -28,7 +28,7 @@ export async function readManifest(path: string, baud: number): Promise<Manifest
         reject(new Trouble(why, "See beamsitter ports, or answer by hand without --port."));
       const pump = (): void => {
         for (let item = session.take(); item !== null; item = session.take()) {
-          if (item.kind === "send") transport.write(`${item.line}\n`);
+          if (item.kind === "send") transport.write(item.line);
         }
         if (session.manifest !== null) resolve(session.manifest);
         else if (session.phase === "stopped")
