@@ -231,8 +231,9 @@ export class Supervision {
     const own = this.loop.bench;
     const { state } = this.snapshot();
     // Asked before the file is read: reading takes longer than the permits of a lit bench may wait.
-    if (state === "armed" || state === "emitting") {
-      const words = `${own.name} is ${state}; a bench file is adopted only while dark.`;
+    if (!this.loop.mayAdopt) {
+      const is = state === "standby" ? "being armed" : state;
+      const words = `${own.name} is ${is}; a bench file is adopted only while dark.`;
       return { ok: false, reason: "not-standby", words };
     }
     const { bench, lines } = this.#options.read(text);

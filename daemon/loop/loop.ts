@@ -1,3 +1,4 @@
+import { isLit } from "../judge/cut.ts";
 import { compilePlan, type Plan } from "../judge/plan.ts";
 import {
   ASKERS,
@@ -9,7 +10,7 @@ import {
   REQUESTS,
   type RequestName,
 } from "../judge/records.ts";
-import { newInput, newOut, newState, restoreLatch, type State } from "../judge/state.ts";
+import { newInput, newOut, newState, PENDING, restoreLatch, type State } from "../judge/state.ts";
 import { step } from "../judge/step.ts";
 import { brokenLines } from "../link/counts.ts";
 import { PlainSession } from "../link/plain/session.ts";
@@ -148,7 +149,15 @@ export class Loop {
     this.#sendQueued();
   }
 
-  /** Takes a changed bench file into use. Only while dark: the caller has seen to that. */
+  /**
+   * Whether a changed bench file may be taken into use: the bench is dark, and nobody is arming it.
+   * An arming under way is bound to the curve the board holds now; the board would light with that.
+   */
+  get mayAdopt(): boolean {
+    return !isLit(this.state) && this.state.arming === PENDING.none;
+  }
+
+  /** Takes a changed bench file into use. Only while `mayAdopt`: the caller has seen to that. */
   adopt(bench: Bench, benchText: string, now: Mono_ms): void {
     this.bench = bench;
     this.#ports.record({ kind: "bench", ringRow: this.#rows, benchText });

@@ -20,7 +20,8 @@ if (!parsed.ok) throw new Error(JSON.stringify(parsed.problems));
 
 /** Bench north as its file describes it. */
 export const north: Bench = parsed.bench;
-const module = new WebAssembly.Module(
+/** The controller core, compiled once for all boards of a test file. */
+export const controllerCore = new WebAssembly.Module(
   readFileSync(assetFile("firmware-protocol/wasm/controller.wasm")),
 );
 
@@ -41,7 +42,7 @@ export class Chain {
     const bench = options.bench ?? north;
     this.board = new North({
       bench: north,
-      module,
+      module: controllerCore,
       seed: options.seed ?? 1,
       rate_perS: 50,
       pass_ms: 1,

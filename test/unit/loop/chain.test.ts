@@ -97,6 +97,25 @@ describe("the chain on a simulated clock", () => {
     expect(c.events.find((e) => e.kind === "trip")?.hazard).toBe(cause);
   });
 
+  test("a bench file is adopted only while dark, and not while somebody is arming", () => {
+    const c = new Chain();
+    c.ready();
+    expect(c.loop.mayAdopt).toBe(true);
+    c.asking.ask(
+      { id: 1, verb: "arm", current_mA: 600, asker: "person" },
+      c.lockstep.now(),
+      () => {},
+    );
+    // The board answers with the curve it holds now: another file would light with the old one.
+    expect(c.state).toBe("standby");
+    expect(c.loop.mayAdopt).toBe(false);
+    c.until(() => c.state === "armed", 1000);
+    expect(c.loop.mayAdopt).toBe(false);
+    c.ask({ id: 2, verb: "dark", asker: "person" });
+    c.run(1000);
+    expect(c.loop.mayAdopt).toBe(true);
+  });
+
   test("a defect of our own: dark at once past the judge, and no line after it", () => {
     const c = new Chain();
     c.light(600);
