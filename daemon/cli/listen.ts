@@ -73,7 +73,7 @@ async function show(
         lines++;
         const broken = checkLine(line, "host");
         if (json) print(jsonLine(Heard, { line, broken }));
-        else print(broken === null ? line : `${line}   (${broken})`);
+        else print(broken === null || !line.startsWith("<") ? line : `${line}   (${broken})`);
       },
       closed: resolve,
     });
@@ -108,9 +108,9 @@ async function guess(
   const { format, undecided } = found;
   const piece = format === null ? "" : pieceOf(found, { kind: "serial", path, baud });
   if (json) {
-    const columns = found.columns.map(({ name, channel, unit, confidence }) => ({
-      ...{ name, channel, unit, confidence },
-    }));
+    const columns = found.columns.map(({ name, channel, unit, confidence }) => {
+      return { name, channel, unit, confidence };
+    });
     printJson(Guessed, { baud, format, columns, undecided: [...undecided], piece });
   } else {
     if (piece !== "") print(`# ${path} at ${baud} baud: ${format}. For a bench file:\n${piece}`);

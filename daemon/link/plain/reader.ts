@@ -9,6 +9,8 @@ export type LineKind = "values" | "some" | "text" | "half" | "broken";
 
 /** Stands before and after a key, so that T is not found in PT. */
 const BEFORE = "(?<![A-Za-z0-9_])";
+/** After a number no more digits, and no key at once: two lines may have run into each other. */
+const AFTER = "(?![.,]?\\d)(?![A-Za-z_]+\\s*[=:])";
 const literally = (text: string): string => text.replace(/[.*+?^${}()|[\]\\]/g, "\\$&");
 
 /**
@@ -56,7 +58,7 @@ export class StreamReader {
     const value = `(${number}|(?:${NO_READING_PATTERN})(?![A-Za-z]))`;
     const between =
       this.spec.format === "labelled" ? "[^0-9+\\-.,;]{0,24}?[\\s:=]" : "\\s*[=:]\\s*";
-    return new RegExp(`${BEFORE}${literally(name)}${between}${value}(?![\\d])`, "g");
+    return new RegExp(`${BEFORE}${literally(name)}${between}${value}${AFTER}`, "g");
   }
 
   private readCells(line: string): LineKind {
