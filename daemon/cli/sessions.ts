@@ -3,6 +3,7 @@ import { importCommand } from "./sessions-import.ts";
 import { noteCommand, tagCommand } from "./sessions-keep.ts";
 import { packCommand, unpackCommand } from "./sessions-pack.ts";
 import { listAction, showCommand, verifyCommand } from "./sessions-read.ts";
+import { retireCommand } from "./sessions-retire.ts";
 import { recordCommandOf } from "./sessions-where.ts";
 
 /** `sessions`: the list, and all that is done with single sessions. */
@@ -24,6 +25,7 @@ export function sessionsCommand(): Command {
     packCommand(),
     unpackCommand(),
     importCommand(),
+    retireCommand(),
   ]) {
     sessions.addCommand(part);
   }

@@ -42,6 +42,13 @@ export const KeeperRequest = z.discriminatedUnion("verb", [
     note: z.string(),
     who: z.string().max(80),
   }),
+  /** Takes the full rate of old samples away; null for no such bound, or for whatever was exported. */
+  z.strictObject({
+    verb: z.literal("retire"),
+    days: z.number().min(1).nullable(),
+    gigabytes: z.number().positive().nullable(),
+    exportedTo: z.string().max(80).nullable(),
+  }),
   /** The file is read by the recorder itself, so its name is a whole path. */
   z.strictObject({ verb: z.literal("unpack"), file: z.string() }),
 ]);

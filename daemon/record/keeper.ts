@@ -3,6 +3,7 @@ import { epochWords } from "../model/epoch.ts";
 import { writeEpoch, writeReading } from "./by-hand.ts";
 import type { KeeperDone, KeeperRequest } from "./keeper-api.ts";
 import { writeNote, writeTag } from "./notes.ts";
+import { retire, ruleOf } from "./retention.ts";
 import type { Store } from "./store.ts";
 import { sweepArriving, unpack } from "./unpack.ts";
 import type { Work } from "./work.ts";
@@ -35,6 +36,11 @@ export class Keeper {
         return this.#epoch(request);
       case "reading":
         return this.#reading(request);
+      case "retire": {
+        const rule = ruleOf(request.days, request.gigabytes, request.exportedTo);
+        const retired = yield* retire(this.#store, this.#bench, rule, this.#wall_ms());
+        return done(0, retired.words);
+      }
       case "unpack": {
         const scratch = join(this.#store.folder, "arriving.sqlite");
         const session = yield* unpack(this.#store, request.file, scratch);

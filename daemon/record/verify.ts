@@ -61,6 +61,7 @@ function guarded(chunk: Chunk, check: () => string): string {
 
 /** What is wrong with a chunk; empty where nothing is. */
 function checkChunk(index: ChunkIndex, chunk: Chunk): string {
+  if (chunk.retired === 1) return "";
   const name = chunk.id < 0 ? `chunk ${-chunk.id} of the growing block` : `block ${chunk.id}`;
   const block = index.open(chunk);
   if ("fault" in block) return `${block.fault} (session ${chunk.session})`;
