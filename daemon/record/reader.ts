@@ -183,13 +183,14 @@ export class RecordReader implements SeriesStore {
 
   /** Text of the bench file by which the last input was judged, or null in an empty record. */
   lastBenchText(): string | null {
-    const text = this.#db
-      .prepare(
-        `SELECT text FROM journal JOIN bench_files ON bench_files.id = journal.bench_file
-         ORDER BY run DESC, input DESC LIMIT 1`,
-      )
-      .pluck()
-      .get();
+    const last = (from: string): unknown =>
+      this.#db.prepare(`SELECT text FROM ${from} LIMIT 1`).pluck().get();
+    // A record that was fetched from elsewhere has no journal.
+    const text =
+      last(`journal JOIN bench_files ON bench_files.id = journal.bench_file
+        ORDER BY run DESC, input DESC`) ??
+      last(`sessions JOIN bench_files ON bench_files.id = sessions.bench_file
+        ORDER BY sessions.id DESC`);
     return typeof text === "string" ? text : null;
   }
 

@@ -29,8 +29,8 @@ const COMPILERS = ["gcc", "make"];
 const AVR = ["gcc-avr", "avr-libc", "binutils-avr", "libsimavr-dev", "libelf-dev"];
 
 /** Tests that run a real time-series server; they make a suite of their own. */
-const SERVERS = ["influx-outage", "influx-reader", "influx-victoria"].map(
-  (name) => `test/process/${name}.test.ts`,
+const SERVERS = ["daemon", "outage", "reader", "victoria"].map(
+  (name) => `test/process/influx-${name}.test.ts`,
 );
 const withoutServers = SERVERS.flatMap((file) => ["--exclude", file]);
 
