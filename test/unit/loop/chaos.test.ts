@@ -1,0 +1,122 @@
+import { describe, expect, test } from "vitest";
+import { STATE } from "../../../daemon/judge/records.ts";
+import { Chaos } from "./chaos.ts";
+
+/** More seeds than the suite has time for: CHAOS_FROM=1000 CHAOS_SEEDS=200 runs that many. */
+const FROM = Number(process.env.CHAOS_FROM ?? 1);
+const SEEDS = Number(process.env.CHAOS_SEEDS ?? 3);
+const RUN_ms = 45_000;
+const SETTLE_ms = 4000;
+const LIMIT_ms = 120_000;
+
+describe("everything goes wrong at random, and the diode is looked at in every millisecond", () => {
+  const seeds = Array.from({ length: SEEDS }, (_, i) => FROM + i);
+
+  test.each(seeds)(
+    "seed %i: light only within a permit, under both roofs, latched until reset and armed",
+    (seed) => {
+      const c = new Chaos(seed);
+      c.run(RUN_ms);
+      c.settle(SETTLE_ms);
+      expect(c.oracle.violations).toEqual([]);
+      // Once all is well again, both sides agree on whether the bench is latched.
+      if (c.oracle.boardTripped) expect(c.state).toBe("tripped");
+      expect(["standby", "armed", "emitting", "tripped"]).toContain(c.state);
+      // It was no idle night: light came, went, and came again.
+      expect(c.oracle.permits).toBeGreaterThan(50);
+      expect(c.oracle.trips.length).toBeGreaterThan(0);
+      expect(c.oracle.lit_ms).toBeGreaterThan(1000);
+    },
+    LIMIT_ms,
+  );
+});
+
+/** Permits sent from a timer, on a sample that was judged some time ago. */
+class FromTimer extends Chaos {
+  #last = "";
+
+  override write(line: string): boolean {
+    if (line.startsWith(">permit ")) this.#last = line;
+    return super.write(line);
+  }
+
+  protected override sabotage(): void {
+    if (this.now_ms % 90 === 0 && this.#last !== "") super.write(this.#last);
+  }
+}
+
+/** Every permit is sent twice, in case one is lost. */
+class Twice extends Chaos {
+  override write(line: string): boolean {
+    if (line.startsWith(">permit ")) super.write(line);
+    return super.write(line);
+  }
+}
+
+/** An output stage that stays on for a while after it was cut. */
+class SlowStage extends Chaos {
+  constructor(seed: number) {
+    super(seed);
+    const { controller } = this.board;
+    const own = Object.getPrototypeOf(controller) as object;
+    const read = (name: string): unknown =>
+      Object.getOwnPropertyDescriptor(own, name)?.get?.call(controller);
+    let on_ms = Number.NEGATIVE_INFINITY;
+    let counts: unknown = 0;
+    const isOn = (): boolean => this.now_ms - on_ms < 40;
+    Object.defineProperty(controller, "enabled", {
+      get: () => {
+        if (read("enabled") === true) {
+          on_ms = this.now_ms;
+          counts = read("drive_counts");
+        }
+        return isOn();
+      },
+    });
+    Object.defineProperty(controller, "drive_counts", {
+      get: () => (isOn() ? counts : read("drive_counts")),
+    });
+  }
+}
+
+/** A judge that forgets what it tripped on. */
+class Forgets extends Chaos {
+  protected override sabotage(): void {
+    const { state } = this.loop;
+    if (state.state === STATE.tripped && this.now_ms % 50 === 0) state.state = STATE.standby;
+  }
+}
+
+/** A judge whose ceiling stands a tenth too high. */
+class TooHigh extends Chaos {
+  #raised: object | null = null;
+
+  protected override sabotage(): void {
+    const { plan } = this.loop;
+    if (plan === null || plan === this.#raised) return;
+    this.#raised = plan;
+    const { ceiling_mA, cap_counts } = plan.case;
+    for (let i = 0; i < cap_counts.length; i++) {
+      ceiling_mA[i] = (ceiling_mA[i] ?? 0) * 1.1;
+      cap_counts[i] = Math.floor((cap_counts[i] ?? 0) * 1.1);
+    }
+  }
+}
+
+describe("a canary is caught", () => {
+  test.each([
+    ["permits from a timer", FromTimer, /outside of judging/],
+    ["a permit sent twice", Twice, /two permits for one sample/],
+    ["a stage that stays on", SlowStage, /without a live permit/],
+    ["a judge that forgets its latch", Forgets, /latched by .*, yet standby/],
+    ["a ceiling that is too high", TooHigh, /the cap is above/],
+  ] as const)(
+    "%s",
+    (_what, Canary, words) => {
+      const c = new Canary(5);
+      for (let s = 0; s < 40 && c.oracle.violations.length === 0; s++) c.run(1000);
+      expect(c.oracle.violations.join("\n")).toMatch(words);
+    },
+    LIMIT_ms,
+  );
+});
