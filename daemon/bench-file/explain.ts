@@ -29,6 +29,10 @@ const READING: Readonly<Record<string, string>> = {
   unit: "The unit is not one of this channel's kind.",
   law: "A channel needs exactly one law that turns counts into its unit.",
   points: "A derating has 2 to 16 points.",
+  "cut-off":
+    "A cut-off must darken by itself, say that it was heard, and be on a line that it can use.",
+  "nothing-judged": "A watched bench needs a column that is its current, its case or its light.",
+  "columns-many": "A stream maps at most 32 columns; the rest of a line is left alone.",
   date: "A day stands before another that it must follow.",
 };
 

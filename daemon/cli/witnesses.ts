@@ -1,11 +1,12 @@
-import { parentPort, Worker } from "node:worker_threads";
+import { fork } from "node:child_process";
+import { fileURLToPath } from "node:url";
 import { Witness } from "../link/transports/witness.ts";
 import { calibrationWords, type WitnessSpec } from "../model/witness.ts";
 import { builtFile } from "../paths.ts";
 import { keep } from "../record/keeper-client.ts";
 import { reasonOf } from "./say.ts";
 
-/** What the thread of the witnesses is started with. */
+/** What the process of the witnesses is started with. */
 export interface WitnessWork {
   readonly bench: string;
   readonly folder: string;
@@ -13,22 +14,36 @@ export interface WitnessWork {
 }
 
 /**
- * Asks the instruments in a thread of their own, which hands every reading to the recorder by its
- * socket: nothing of it touches the judging thread but a sentence where something changes.
+ * Asks the instruments in a process of its own, which hands every reading to the recorder by its
+ * socket: nothing of it touches the judging thread but a sentence where something changes. No thread,
+ * because the serial ports' library ends the whole process when a thread that has one open ends.
  */
 export function startWitnesses(work: WitnessWork, say: (words: string) => void): () => void {
   if (work.witnesses.length === 0) return () => {};
-  const worker = new Worker(builtFile("daemon/cli/witness-worker.js"), { workerData: work });
-  worker.on("message", (words: string) => say(words));
-  worker.on("error", (error) => say(`The witnesses are no longer asked: ${reasonOf(error)}`));
-  return () => void worker.terminate();
+  const child = fork(
+    fileURLToPath(builtFile("daemon/cli/witness-worker.js")),
+    [JSON.stringify(work)],
+    // Ctrl-C at the terminal is for the daemon, which then ends its witnesses.
+    { stdio: ["ignore", "ignore", "inherit", "ipc"], execArgv: [], detached: true },
+  );
+  let ended = false;
+  child.on("message", (words: string) => say(words));
+  child.on("error", (error) => say(`The witnesses are not asked: ${reasonOf(error)}.`));
+  child.on("exit", () => {
+    if (!ended) say("The witnesses are no longer asked: their process ended. Restart the daemon.");
+  });
+  return () => {
+    ended = true;
+    child.kill("SIGKILL");
+  };
 }
 
-/** The other end: runs until the thread is ended. */
+/** The other end: runs until the daemon ends it, or is gone. */
 export function askWitnesses({ bench, folder, witnesses }: WitnessWork): void {
-  const say = (name: string, words: string): void =>
-    parentPort?.postMessage(`Witness ${name}: ${words}`);
-  const keeping = { progress: () => {}, signal: new AbortController().signal };
+  process.on("disconnect", () => process.exit());
+  const say = (name: string, words: string): void => {
+    if (process.connected) process.send?.(`Witness ${name}: ${words}`);
+  };
   for (const spec of witnesses) {
     const { name, unit, due } = spec;
     if (due !== null && due < new Date().toISOString().slice(0, 10)) {
@@ -42,6 +57,7 @@ export function askWitnesses({ bench, folder, witnesses }: WitnessWork): void {
       const note = isFirst ? about.slice(0, 400) : "";
       isFirst = false;
       const facts = { bench, name, value, unit, typed: false, note, who: "", wall_ms: Date.now() };
+      const keeping = { progress: () => {}, signal: new AbortController().signal };
       keep(folder, { verb: "reading", ...facts }, keeping).then(
         () => {
           trouble = "";

@@ -1,9 +1,25 @@
 import fc from "fast-check";
 import { describe, expect, test } from "vitest";
 import { BENCH_BYTES_MAX, parseBench } from "../../../daemon/bench-file/parse.ts";
-import { NORTH } from "./files.ts";
+import { BARE_DIODE, changed, NORTH } from "./files.ts";
 
 const seed = 20261201;
+
+/** A bench whose controller has firmware of its own, with an instrument beside it. */
+const WATCHED = `${changed(
+  BARE_DIODE,
+  "  term: 500 ms\n",
+  `  term: 500 ms
+  stream:
+    format: labelled
+    columns:
+      current: { from: I, unit: A }
+      case: { from: T, unit: "°C" }
+  cut-off: { kind: text, send: "off", expect: "ok" }
+`,
+)}witness:
+  meter: { address: "tcp://192.168.1.30:5025", query: "MEAS:POW?", due: 2027-03-01 }
+`;
 
 /** Refused with that code as first problem, at a place in the text. */
 function refused(text: string, code: string): void {
@@ -115,20 +131,23 @@ describe(`whatever the text, no throw and every problem has a place (seed ${seed
       { seed, numRuns: 400 },
     );
   });
-  test("north with passages cut, doubled, swapped or overwritten", () => {
-    const place = fc.nat({ max: NORTH.length });
+  test.each([
+    ["north", NORTH],
+    ["a bench with streams and instruments", WATCHED],
+  ])("%s with passages cut, doubled, swapped or overwritten", (_name, whole) => {
+    const place = fc.nat({ max: whole.length });
     const edit = fc.record({
       from: place,
       length: fc.nat({ max: 40 }),
       text: fc.oneof(
         fc.constantFrom("", ":", "\n", "  ", "9", "-", "A", "K", "none", "1e9", "{", "'"),
         fc.string({ maxLength: 8 }),
-        place.map((at) => NORTH.slice(at, at + 30)),
+        place.map((at) => whole.slice(at, at + 30)),
       ),
     });
     fc.assert(
       fc.property(fc.array(edit, { minLength: 1, maxLength: 4 }), (edits) => {
-        let text = NORTH;
+        let text = whole;
         for (const { from, length, text: put } of edits) {
           text = text.slice(0, from) + put + text.slice(from + length);
         }
