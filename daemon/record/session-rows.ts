@@ -77,6 +77,11 @@ const PARTS: readonly Part[] = [
   },
   { table: "tags", key: "tag", where: "session = @session" },
   {
+    table: "readings",
+    key: "id",
+    where: "bench = @bench AND wall_ms >= @from AND wall_ms <= @to",
+  },
+  {
     table: "kept",
     key: "id",
     where: "bench = @bench AND to_wall_ms > @from AND from_wall_ms < @to",

@@ -22,6 +22,15 @@ const ARRIVING = "arriving";
 /** Parts that come through the store, which counts their numbers. */
 const BY_STORE = new Set(["bench_files", "manifests", "runs", "sessions"]);
 
+/**
+ * Parts that belong to a bench and not to one session: they come last, in one write, and only where
+ * the record does not have the same already.
+ */
+const OF_BENCH = new Set(["gaps", "epochs", "kept", "readings"]);
+
+/** Rollups that mix sessions are made again here: the recorder rolls up what is not rolled yet. */
+const MADE_AGAIN = "rollups";
+
 /** A pack, open, and where its session stands in it. */
 interface OpenPack {
   readonly db: Database.Database;
@@ -131,7 +140,9 @@ function* bring(store: Store, from: Database.Database, place: SessionPlace): Wor
   const numbers = begin(store, from, place);
   let isWhole = false;
   try {
-    const parts = partsOf(from).filter(({ table }) => !BY_STORE.has(table));
+    const parts = partsOf(from).filter(
+      ({ table }) => !BY_STORE.has(table) && !OF_BENCH.has(table) && table !== MADE_AGAIN,
+    );
     const total = parts.reduce((sum, part) => sum + countOf(from, part, place), 0);
     let done = 0;
     for (const part of parts) {
@@ -227,6 +238,7 @@ function renumber(store: Store, table: string, row: RawRow, numbers: Numbers): R
   else if (table === "events") made.id = Number(row.id) + numbers.events;
   else if (table === "blocks") made.id = blockNumber(store, Number(row.id), numbers);
   else if ("id" in row) made.id = null;
+  if ("rolled" in row) made.rolled = 0;
   if ("run" in row) made.run = numbers.run;
   if ("session" in row && row.session !== null) made.session = numbers.session;
   for (const column of ["block", "block0", "block1"]) {
@@ -245,7 +257,7 @@ function blockNumber(store: Store, packed: number, numbers: Numbers): number {
   return id;
 }
 
-/** The session is shown from here on. */
+/** The session is shown from here on, with what its bench's record says about its time. */
 function finish(
   store: Store,
   from: Database.Database,
@@ -253,10 +265,20 @@ function finish(
   numbers: Numbers,
 ): void {
   const kind = from.prepare("SELECT kind FROM sessions WHERE id = ?").pluck().get(place.session);
+  const shared = partsOf(from).filter(({ table }) => OF_BENCH.has(table));
   store.within((record) => {
+    for (const part of shared) {
+      for (const row of [...pagesOf(from, part, place)].flat()) addUnlessThere(record, part, row);
+    }
     record.prepare("UPDATE sessions SET kind = ? WHERE id = ?").run(kind, numbers.session);
-    store.rollMinutes(numbers.session);
   });
+}
+
+function addUnlessThere(record: Database.Database, { table }: Part, packed: RawRow): void {
+  const { id: _id, ...row } = packed;
+  const same = Object.keys(row).map((column) => `${column} IS @${column}`);
+  const found = record.prepare(`SELECT 1 FROM ${table} WHERE ${same.join(" AND ")}`).get(row);
+  if (found === undefined) inserter(record, table, row).run(row);
 }
 
 /** Takes away what a daemon that was killed meanwhile had brought in so far. */

@@ -39,7 +39,8 @@ function recordTwo(folder: string, start_ms = START_ms): void {
   const { ring, recorder } = recording(folder, 8000);
   recorder.take({ kind: "manifest", ringRow: 0, manifest: MANIFEST });
   recorder.take({ kind: "session", ringRow: 0, session: "dark", at: wall(start_ms) });
-  const make = rowMaker(3, (i) => i * 50, start_ms);
+  // A second without samples, in the middle of the second session.
+  const make = rowMaker(3, (i) => i * 50 + (i < 2000 ? 0 : 1000), start_ms);
   for (let i = 0; i < 4000; i++) {
     if (i === 1000) {
       recorder.take({
@@ -109,7 +110,7 @@ describe("a pack", () => {
       { id: 2, samples: 3000 },
     ]);
     expect(reader.events({ from: wall(0), to: wall(1e15) }).map((e) => e.id)).toEqual([3]);
-    const window = { from: wall(START_ms), to: wall(START_ms + 200_000) };
+    const window = { from: wall(START_ms), to: wall(START_ms + 300_000) };
     const query = { bench: "north", channels: ["current"], window, pixels: 20 };
     const answer = await reader.series(query);
     expect(answer.channels.current?.n.reduce((sum, n) => sum + n, 0)).toBe(3000);
@@ -132,6 +133,14 @@ describe("a pack", () => {
       { session: 3, tag: "good night" },
     ]);
     db.close();
+    const gaps = (at: string): unknown[] => {
+      const record = openForReading(at);
+      const found = record.prepare("SELECT from_wall_ms, to_wall_ms FROM gaps").all();
+      record.close();
+      return found;
+    };
+    expect(gaps(pack)).toHaveLength(1);
+    expect(gaps(other.folder)).toEqual(expect.arrayContaining(gaps(pack)));
     const from = openReader(folder);
     const to = openReader(other.folder);
     const run = to.sessions().find((s) => s.id === 3)?.run ?? 0;
