@@ -28,9 +28,6 @@ const BY_STORE = new Set(["bench_files", "manifests", "runs", "sessions"]);
  */
 const OF_BENCH = new Set(["gaps", "epochs", "kept", "readings"]);
 
-/** Rollups that mix sessions are made again here: the recorder rolls up what is not rolled yet. */
-const MADE_AGAIN = "rollups";
-
 /** A pack, open, and where its session stands in it. */
 interface OpenPack {
   readonly db: Database.Database;
@@ -140,9 +137,7 @@ function* bring(store: Store, from: Database.Database, place: SessionPlace): Wor
   const numbers = begin(store, from, place);
   let isWhole = false;
   try {
-    const parts = partsOf(from).filter(
-      ({ table }) => !BY_STORE.has(table) && !OF_BENCH.has(table) && table !== MADE_AGAIN,
-    );
+    const parts = partsOf(from).filter(({ table }) => !BY_STORE.has(table) && !OF_BENCH.has(table));
     const total = parts.reduce((sum, part) => sum + countOf(from, part, place), 0);
     let done = 0;
     for (const part of parts) {
@@ -238,7 +233,6 @@ function renumber(store: Store, table: string, row: RawRow, numbers: Numbers): R
   else if (table === "events") made.id = Number(row.id) + numbers.events;
   else if (table === "blocks") made.id = blockNumber(store, Number(row.id), numbers);
   else if ("id" in row) made.id = null;
-  if ("rolled" in row) made.rolled = 0;
   if ("run" in row) made.run = numbers.run;
   if ("session" in row && row.session !== null) made.session = numbers.session;
   for (const column of ["block", "block0", "block1"]) {
@@ -271,6 +265,7 @@ function finish(
       for (const row of [...pagesOf(from, part, place)].flat()) addUnlessThere(record, part, row);
     }
     record.prepare("UPDATE sessions SET kind = ? WHERE id = ?").run(kind, numbers.session);
+    store.rollMinutes(numbers.session);
   });
 }
 

@@ -141,6 +141,11 @@ describe("a pack", () => {
     };
     expect(gaps(pack)).toHaveLength(1);
     expect(gaps(other.folder)).toEqual(expect.arrayContaining(gaps(pack)));
+    const minutes = openForReading(other.folder);
+    // 4000 samples were here, 3000 came: each counts once in the statistics of its minute.
+    const counted = "SELECT sum(r.n) FROM rollup_1min r JOIN channels c ON c.id = r.channel";
+    expect(minutes.prepare(`${counted} WHERE c.name = 'current'`).pluck().get()).toBe(7000);
+    minutes.close();
     const from = openReader(folder);
     const to = openReader(other.folder);
     const run = to.sessions().find((s) => s.id === 3)?.run ?? 0;
