@@ -25,7 +25,9 @@ const oneWitness = section("a map that describes one instrument", {
   baud: quantity("baud", { min: 300, max: 4_000_000 }, 9600).describe(
     "Line rate of the instrument's serial port.",
   ),
-  query: line("the question it answers with one number, such as MEAS:POW?", /^[!-~ ]{1,99}\?$/),
+  // One question and nothing else: no semicolon and no space, behind which a setting could travel.
+  // An instrument may be the very supply that feeds the diode, and only a permit raises current.
+  query: line("one question without a space or ;, such as MEAS:POW?", /^[!-:<-~]{1,99}\?$/),
   unit: oneOf("the unit that it answers in", UNITS, "W"),
   period: quantity("time", { min: 100, max: 3_600_000 }, 1000).describe("How often it is asked."),
   calibrated: line("the day of its calibration, 2026-03-01", DAY, ""),

@@ -37,6 +37,9 @@ describe("witness", () => {
   test.each([
     ["an address of another form", "tcp://192.168.1.30:5025", "192.168.1.30", "text"],
     ["a command that asks nothing", "MEAS:POW?", "OUTP ON", "text"],
+    ["a setting hidden before a question", "MEAS:POW?", '"SOUR:CURR 2;MEAS:CURR?"', "text"],
+    ["a setting in the words of a question", "MEAS:POW?", "CURR 2?", "text"],
+    ["two commands in one", "MEAS:POW?", '"OUTP:ON;FETC?"', "text"],
     ["a unit that is none", "unit: W", "unit: foot", "word"],
     ["a day that is none", "2026-03-01", "1.3.2026", "text"],
     ["due before it was calibrated", "due: 2027-03-01", "due: 2026-03-01", "date"],
