@@ -31,6 +31,8 @@ const READING: Readonly<Record<string, string>> = {
   points: "A derating has 2 to 16 points.",
   "cut-off":
     "A cut-off must darken by itself, say that it was heard, and be on a line that it can use.",
+  place: "Columns of a csv line are named by their place, from 1.",
+  separator: "Decimals and columns cannot both be marked by a comma.",
   "nothing-judged": "A watched bench needs a column that is its current, its case or its light.",
   "columns-many": "A stream maps at most 32 columns; the rest of a line is left alone.",
   date: "A day stands before another that it must follow.",
