@@ -5,7 +5,8 @@ import { MANIFEST, publish, rowMaker } from "../unit/record/row-maker.ts";
 
 /**
  * Records into a data folder as a daemon would, until it is killed: about 100 samples a second and
- * an event with every tenth, each named on stdout once it was handed over. For tests that kill it.
+ * an event with every tenth, each named on stdout once it was handed over; the first is the arming.
+ * For tests that kill it.
  */
 const SAMPLE_ms = 10;
 const SAMPLES_AN_EVENT = 10;
@@ -34,19 +35,22 @@ function record(lastEventId: number): void {
   client.post({ kind: "session", ringRow: 0, session: "lit", at: wall(started) });
   const make = rowMaker(1, () => Date.now() - started, started);
   let samples = 0;
+  postEvent(lastEventId + 1, "armed");
+  say({ started });
   setInterval(() => {
     publish(ring, make(samples++));
-    if (samples % SAMPLES_AN_EVENT === 0) postEvent(lastEventId + samples / SAMPLES_AN_EVENT);
+    const id = lastEventId + 1 + samples / SAMPLES_AN_EVENT;
+    if (samples % SAMPLES_AN_EVENT === 0) postEvent(id, "warning");
   }, SAMPLE_ms);
 }
 
-function postEvent(id: number): void {
+function postEvent(id: number, kind: "armed" | "warning"): void {
   const at = Date.now();
   const data = { words: "the case is warm" };
   const times = { mono: mono(performance.now()), wall: wall(at), tick: -1, input: 0 };
   client.post({
     kind: "event",
-    event: { id, bench: "north", ...times, kind: "warning", hazard: "case-over", data },
+    event: { id, bench: "north", ...times, kind, hazard: "case-over", data },
   });
   say({ event: id, at });
 }
