@@ -14,7 +14,7 @@ const NORTH = readFileSync(assetFile("daemon/bench-file/benches/north.yaml"), "u
 const LOWER = NORTH.replace("current: 2.10 A", "current: 1.00 A")
   .replace("current: 1.54 A", "current: 0.90 A")
   .replace("r25: 10 kohm", "r25: 11 kohm");
-const READY_MS = 60_000;
+const READY_ms = 60_000;
 
 let place: Place;
 let daemon: Daemon;
@@ -31,7 +31,7 @@ beforeAll(async () => {
   await watcher.watch((push) => {
     if (push.push === "event") events.push(push.event);
   });
-  await daemon.until((s) => s.link.phase === "ready", READY_MS);
+  await daemon.until((s) => s.link.phase === "ready", READY_ms);
 });
 afterAll(async () => {
   watcher.close();
@@ -107,7 +107,7 @@ describe("adopt", () => {
     expect(code).toBe(1);
     expect(stdout).toContain("a bench file is adopted only while dark.");
     await runCli(place, "dark");
-    await daemon.until((s) => s.state === "standby", READY_MS);
+    await daemon.until((s) => s.state === "standby", READY_ms);
   });
 
   test("while dark: in use at once, on the board, in the desk and in the record", async () => {
@@ -117,9 +117,9 @@ describe("adopt", () => {
     const { code, stdout } = await adopt(LOWER, "--confirm", "adopt", "--json");
     expect(code).toBe(0);
     expect(JSON.parse(stdout)).toMatchObject({ ok: true, adopted: true });
-    const s = await daemon.until((x) => (x.ceiling_mA ?? 1e9) < 1010, READY_MS);
+    const s = await daemon.until((x) => (x.ceiling_mA ?? 1e9) < 1010, READY_ms);
     expect(s.ceiling_mA).toBeGreaterThan(900);
-    await daemon.until((x) => x.link.phase === "ready", READY_MS);
+    await daemon.until((x) => x.link.phase === "ready", READY_ms);
     const told = events.slice(before).map((e) => [e.kind, e.hazard]);
     expect(told).toContainEqual(["adopted", ""]);
     expect(told).toContainEqual(["link", "curve-loaded"]);

@@ -2,7 +2,7 @@ import { type ChildProcess, spawn } from "node:child_process";
 import { afterAll, afterEach, beforeAll, describe, expect, test } from "vitest";
 import { CLI, Daemon, Place, runCli } from "./daemon.ts";
 
-const READY_MS = 60_000;
+const READY_ms = 60_000;
 let place: Place;
 let daemon: Daemon;
 let typing: ChildProcess | null = null;
@@ -10,7 +10,7 @@ let typing: ChildProcess | null = null;
 beforeAll(async () => {
   place = new Place();
   daemon = await Daemon.start(place, "north", "--stay-dark");
-  await daemon.until((s) => s.link.phase === "ready", READY_MS);
+  await daemon.until((s) => s.link.phase === "ready", READY_ms);
 });
 afterEach(() => {
   typing?.kill("SIGKILL");
@@ -46,9 +46,9 @@ describe("arm", () => {
     expect(shown).toContain("Type 0.9 A again to go on");
     expect(shown).toContain("north is armed for 0.90");
     expect(shown).toContain("exit 0");
-    await daemon.until((s) => s.state === "armed" || s.state === "emitting", READY_MS);
+    await daemon.until((s) => s.state === "armed" || s.state === "emitting", READY_ms);
     await runCli(place, "dark");
-    await daemon.until((s) => s.state === "standby", READY_MS);
+    await daemon.until((s) => s.state === "standby", READY_ms);
   });
 
   test.each([
@@ -75,7 +75,7 @@ describe("arm", () => {
     expect(same.code).toBe(0);
     expect(JSON.parse(same.stdout)).toMatchObject({ ok: true });
     await runCli(place, "dark");
-    await daemon.until((s) => s.state === "standby", READY_MS);
+    await daemon.until((s) => s.state === "standby", READY_ms);
   });
 
   test("what the judge would refuse is refused before anybody types it again", async () => {

@@ -15,7 +15,7 @@ import { Pty } from "./pty.ts";
 import { smallDisk, unmount } from "./small-disk.ts";
 
 /** Longest wait for a daemon to say what is wrong; a silent port takes four seconds by itself. */
-const SAY_MS = 60_000;
+const SAY_ms = 60_000;
 const BARE = readFileSync(assetFile("daemon/bench-file/benches/bare-diode.yaml"), "utf8");
 
 let place: Place;
@@ -43,7 +43,7 @@ async function started(bench: string, ...args: string[]): Promise<Daemon> {
 
 /** What the daemon says of its link, once that fits. */
 const linkSays = async (daemon: Daemon, words: RegExp): Promise<string> =>
-  (await daemon.until((s) => words.test(s.link.words), SAY_MS)).link.words;
+  (await daemon.until((s) => words.test(s.link.words), SAY_ms)).link.words;
 
 /** Runs `run` with these arguments; it is expected to refuse and to leave nothing behind. */
 async function refused(...args: string[]): Promise<{ code: number | null; said: string }> {
@@ -273,7 +273,7 @@ describe.skipIf(disk === null)("a full disk at start (needs the right to mount)"
 describe("a terminal that nobody reads", () => {
   async function clientOf(bench: string): Promise<SwitchClient> {
     const socket = join(place.env.XDG_RUNTIME_DIR ?? "", "beamsitter", `${bench}.socket`);
-    const wait = { timeout: SAY_MS, interval: 50 };
+    const wait = { timeout: SAY_ms, interval: 50 };
     const client = await vi.waitFor(() => SwitchClient.connect(socket), wait);
     ends.push(() => client.close());
     return client;

@@ -6,7 +6,7 @@ import { afterEach, beforeEach, describe, expect, test } from "vitest";
 import { Daemon, Place, runCli } from "./daemon.ts";
 
 /** Nothing is timed here: the machine may be busy. Light itself is measured in daemon.test.ts. */
-const STATE_MS = 60_000;
+const STATE_ms = 60_000;
 
 let place: Place;
 let daemon: Daemon | null = null;
@@ -26,7 +26,7 @@ const runFolder = (): string => join(place.env.XDG_RUNTIME_DIR ?? "", "beamsitte
 async function armed(): Promise<Daemon> {
   const started = await Daemon.start(place, "north");
   daemon = started;
-  await started.until((s) => s.state === "armed" || s.state === "emitting", STATE_MS);
+  await started.until((s) => s.state === "armed" || s.state === "emitting", STATE_ms);
   return started;
 }
 
@@ -53,7 +53,7 @@ describe("beamsitter dark", () => {
     expect(code).toBe(0);
     expect(told.benches).toMatchObject([{ bench: "north", ok: true }]);
     expect(["switch", "dark port"]).toContain(told.benches[0]?.way);
-    await running.until((s) => s.state === "standby", STATE_MS);
+    await running.until((s) => s.state === "standby", STATE_ms);
   });
 
   test("--on another bench touches nothing, and names what runs", async () => {
@@ -71,7 +71,7 @@ describe("beamsitter dark", () => {
     const { code, told } = await dark("--on", "north");
     expect(code).toBe(0);
     expect(told.benches).toMatchObject([{ way: "dark port", ok: true }]);
-    await running.until((s) => s.state === "standby", STATE_MS);
+    await running.until((s) => s.state === "standby", STATE_ms);
     const status = await runCli(place, "status");
     expect(status.code).toBe(3);
     expect(status.stderr).toContain("beamsitter dark --on north");
@@ -89,7 +89,7 @@ describe("beamsitter dark", () => {
     const again = await Daemon.start(place, "north", "--stay-dark");
     daemon = again;
     // The built-in board began anew with its daemon; the latch on disk is what still knows.
-    const s = await again.until((x) => x.state === "tripped", STATE_MS);
+    const s = await again.until((x) => x.state === "tripped", STATE_ms);
     expect(s.cause).not.toBeNull();
   });
 
