@@ -84,6 +84,11 @@ async function within(way: Promise<Darkened>): Promise<Darkened | null> {
 
 function endDaemon(notice: Notice): Darkened {
   const base = { bench: notice.bench, way: "daemon ended" as const };
+  if (!notice.endsLight) {
+    const words =
+      "the daemon answers on neither way, and ending it would not end this light, which needs no permits. Turn the key or cut the supply.";
+    return { ...base, ok: false, words };
+  }
   try {
     process.kill(notice.pid, "SIGKILL");
     return {

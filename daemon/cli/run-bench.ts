@@ -8,6 +8,7 @@ import { ScriptedPerson } from "../bench-sim/scripted-person.ts";
 import { SwitchClient } from "../control/client.ts";
 import type { Bench } from "../model/bench.ts";
 import { Ring, ringBytes } from "../model/ring.ts";
+import { enforcementOf } from "../model/stream.ts";
 import { Supervision } from "../supervise.ts";
 import { addressTrouble, darkHosts, wantPort } from "./addresses.ts";
 import { loadBench } from "./bench-text.ts";
@@ -190,6 +191,7 @@ function announce(
     darkPort,
     folder,
     port: transport.kind === "serial" ? transport.path : "",
+    endsLight: /^(permit|toggled)$/.test(enforcementOf(bench.controller.stream)),
   });
   const page = desk.sign() ?? desk.address();
   telling.started({ kind: "started", bench: bench.name, pid, page, darkPort, folder }, more);
@@ -207,7 +209,10 @@ function firstWords(supervision: Supervision, hints: number, scripted: boolean):
 }
 
 function lastWords({ name }: Bench, supervision: Supervision): string {
-  const { state } = supervision.snapshot();
+  const { state, enforcement } = supervision.snapshot();
+  if (enforcement === "none") {
+    return `${name} is not watched any more; its light is as it was. The daemon has ended.`;
+  }
   if (state === "offline") return `${name} was not connected. The daemon has ended.`;
   return isLit(supervision)
     ? `${name} has not confirmed dark; without permits it is dark within its term. Go and look.`

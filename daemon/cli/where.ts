@@ -25,6 +25,8 @@ const Notice = z.object({
   folder: z.string(),
   /** Serial port of its controller; empty where it has none. */
   port: z.string().default(""),
+  /** Whether its light ends with the daemon; a bench that is merely watched goes on. */
+  endsLight: z.boolean().default(true),
 });
 export type Notice = z.infer<typeof Notice>;
 

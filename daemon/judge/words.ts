@@ -28,6 +28,8 @@ export interface SentenceNames {
   readonly wavelength_nm: number;
   /** Whether a crystal makes that light. */
   readonly pumped: boolean;
+  /** Whether its controller takes no permits, so that nothing here knows how it starts. */
+  readonly watched?: boolean;
 }
 
 /** How an event looks: calm is expected; warn and trip are not. */
@@ -104,8 +106,11 @@ export function nextSentence(names: SentenceNames, view: View, age_ms: number): 
   const heard = age_ms < SILENT_ms && view.state !== STATE.offline;
   if (isWatched(view) && heard) return watchedNext(view);
   if (view.state === STATE.tripped) return afterTrip(view);
-  if (view.state === STATE.offline)
-    return "It is being looked for; when it answers it starts dark.";
+  if (view.state === STATE.offline) {
+    const then =
+      names.watched === true ? "its light is not known here" : "when it answers it starts dark";
+    return `It is being looked for; ${then}.`;
+  }
   if (age_ms >= SILENT_ms) return "Look at the cable and at the board's supply.";
   if (view.state === STATE.standby) {
     return `At this case temperature it may have ${atMost(view.ceiling_mA)}; ${makerWords(view)} makes that ceiling.`;
@@ -217,7 +222,9 @@ function calmWords(kind: EventKind, hazard: number, a: number, b: number): strin
     case "uncapped":
       return `Let up to ${amps(a)} again; the ceiling is ${atMost(b)}.`;
     case "set":
-      return `${amps(a)} asked instead of ${amps(b)}.`;
+      return amps(a) === amps(b)
+        ? `${amps(a)} asked once more.`
+        : `${amps(a)} asked instead of ${amps(b)}.`;
     case "refused":
       return `Refused: ${refusalReason(REFUSALS[a] ?? "board")}.`;
     default:

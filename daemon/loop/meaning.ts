@@ -21,6 +21,7 @@ export function meaningOf(loop: Loop, current_mA: number, port: string): LoopAns
     reason,
     words: refusalWords(reason, current_mA, value, view),
   });
+  if (bench.controller.stream !== undefined) return refused("watch-only", Number.NaN);
   if (view.state === STATE.tripped) return refused("tripped", view.cause);
   if (view.state === STATE.offline || plan === null) {
     const why = linkWords(loop, port);

@@ -38,6 +38,7 @@ export function namesOf(bench: Bench): SentenceNames {
     bench: bench.name,
     wavelength_nm: bench.crystal?.wavelength_nm ?? bench.diode.wavelength_nm,
     pumped: bench.crystal !== null,
+    watched: bench.controller.stream !== undefined,
   };
 }
 

@@ -46,7 +46,7 @@ function silentSentences(now: Snapshot, { silence_ms, dark_at }: Beside): Senten
   const confirmed = dark_at !== undefined && dark_at >= now.at - CONFIRMED_ms;
   const whether = confirmed
     ? ` Dark was confirmed at ${clockWithSeconds(dark_at)}.`
-    : lit
+    : lit && now.enforcement === "permit"
       ? ` Its permits end ${(now.link.term_ms / 1000).toFixed(1)}\u00a0s after the computer falls silent; whether it is dark is not known here.`
       : "";
   return {

@@ -210,6 +210,12 @@ describe("sentences", () => {
     expect(said.state).toContain("whether it is dark is not known here");
   });
 
+  test("a silent bench that takes no permits is not said to end by itself", () => {
+    const watched = { ...snapshotOf("calm", 0), enforcement: "none" as const };
+    const said = sentencesOf(watched, { ...heard, silence_ms: 34_000 });
+    expect(said.state).not.toContain("permits end");
+  });
+
   test("a dark confirmed since then is said, one from before is not", () => {
     const now = snapshotOf("calm", 1_000_000);
     const said = (dark_at: number): string =>

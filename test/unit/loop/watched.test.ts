@@ -1,4 +1,5 @@
 import { describe, expect, test } from "vitest";
+import { meaningOf } from "../../../daemon/loop/meaning.ts";
 import { benchWith, STREAM, Watched } from "./watched.ts";
 
 const plain = (text: string): string => text.replace(/[\u00a0\u202f]/g, " ");
@@ -45,6 +46,7 @@ describe("a bench that is only watched", () => {
 
   test("arm, set and dark are refused as watch-only; nothing is ever written", () => {
     const rig = new Watched(bench).open().say(LIT, 5);
+    expect(meaningOf(rig.loop, 100, "")).toMatchObject({ ok: false, reason: "watch-only" });
     for (const verb of ["arm", "set", "dark"] as const) {
       expect(rig.ask(verb)).toMatchObject({ ok: false, reason: "watch-only" });
     }
@@ -60,6 +62,7 @@ describe("a bench that is only watched", () => {
     expect(rig.snapshot().sentence).toContain("Nothing heard from attic");
     rig.loop.closed(rig.now as never, "pulled");
     expect(rig.state).toBe("offline");
+    expect(rig.snapshot().next).toContain("its light is not known here");
     rig.open().say(LIT, 2);
     expect(rig.state).toBe("emitting");
     expect(rig.kinds().some((k) => k.startsWith("trip"))).toBe(false);
