@@ -85,6 +85,10 @@ describe("readings of a witness", () => {
     expect([...((await series("witness.typed", 100))?.mean ?? [])]).toEqual([1830]);
     expect([...((await series("meter", 100))?.mean ?? [])]).toEqual([]);
     expect(reader.events(ALL).map((event) => event.data.words)).toEqual(["lab read 1830 mW."]);
+    await keep(scratch.folder, EPOCH, KEEPING);
+    const ids = reader.events(ALL).map((event) => event.id);
+    expect(new Set(ids).size).toBe(2);
+    expect(ids.every((id) => id < 0)).toBe(true);
     expect(reader.readings().map(({ name }) => name)).toEqual(["meter", "meter", "typed"]);
     reader.close();
   });
