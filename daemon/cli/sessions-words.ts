@@ -40,14 +40,21 @@ export const LIST_HEAD =
 
 function rangeWords({ current }: SessionLine): string {
   if (current === null) return "";
-  const [low, high] = [current.min, current.max].map((mA) => formatQuantity("current", mA, 10));
-  return low === high ? String(low) : `${low?.replace(/\s?A$/u, "")} to ${high}`;
+  const [low, high] = [format(current.min), format(current.max)];
+  if (low === high) return low;
+  const [number, unit] = low.split(/\s/u);
+  // The unit stands once where both have the same.
+  return `${unit === high.split(/\s/u)[1] ? number : low} to ${high}`;
 }
+
+const format = (current_mA: number): string => formatQuantity("current", current_mA, 10);
 
 /** How the output changed, in per cent of what it was. */
 function changeWords({ output }: SessionLine): string {
   if (output === null || !(output.first > 0)) return "";
   const percent = (100 * (output.last - output.first)) / output.first;
+  // It began in the dark or in the ramp; how many times that little is nothing to read.
+  if (percent > 100) return "> +100 %";
   return `${percent > 0 ? "+" : percent < 0 ? "\u2212" : ""}${Math.abs(percent).toFixed(1)} %`;
 }
 

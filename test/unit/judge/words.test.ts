@@ -187,6 +187,7 @@ describe("events", () => {
     expect(plain(eventWords("set", NO_HAZARD, 1200, 1000).words)).toBe(
       "1.20 A asked instead of 1.00 A.",
     );
+    expect(plain(eventWords("set", NO_HAZARD, 1200, 1200).words)).toBe("1.20 A asked once more.");
     expect(eventWords("dark", 0, 1450, 31).words).toBe("Dark: a person asked for dark.");
     expect(eventWords("refused", NO_HAZARD, REFUSALS.indexOf("key-off"), 0).words).toBe(
       "Refused: the key is off.",
