@@ -17,7 +17,7 @@ interface FactRow {
 
 /** One kind of fact: where it stands in the record, and what of it is sent. */
 interface FactKind {
-  readonly key: "event" | "gap" | "note" | "epoch";
+  readonly key: "event" | "gap" | "note" | "epoch" | "reading";
   readonly measurement: string;
   readonly sql: string;
   fields(row: Record<string, unknown>): Record<string, Field>;
@@ -65,12 +65,28 @@ const KINDS: readonly FactKind[] = [
       words: text(JSON.stringify(String(row.words))),
     }),
   },
+  {
+    key: "reading",
+    measurement: MEASUREMENT.readings,
+    sql: "SELECT * FROM readings",
+    fields: (row) => ({
+      value: real(number(row.value)),
+      name: text(JSON.stringify(String(row.name))),
+      unit: words(row.unit),
+    }),
+  },
 ];
 
-/** Events, gaps, notes, epochs and sessions after a place; null where all are sent. */
+/** Events, gaps, notes, epochs, readings and sessions after a place; null where all are sent. */
 export function nextFacts(db: Database.Database, place: Place, precision: Precision): Batch | null {
   const points: Point[] = [];
-  const ids = { event: place.event, gap: place.gap, note: place.note, epoch: place.epoch };
+  const ids = {
+    event: place.event,
+    gap: place.gap,
+    note: place.note,
+    epoch: place.epoch,
+    reading: place.reading,
+  };
   for (const kind of KINDS) {
     const rows = db
       .prepare(`${kind.sql} WHERE id > ? ORDER BY id LIMIT ${FACTS_MAX}`)

@@ -29,6 +29,7 @@ export interface Place {
   readonly gap: number;
   readonly note: number;
   readonly epoch: number;
+  readonly reading: number;
   /** Sessions up to this one were sent as they ended; later ones by id, as they were sent last. */
   readonly sessionsDone: number;
   readonly sessions: Readonly<Record<string, string>>;
@@ -50,6 +51,7 @@ export const newPlace = (target: string): Place => ({
   gap: 0,
   note: 0,
   epoch: 0,
+  reading: 0,
   sessionsDone: 0,
   sessions: {},
   samples: 0,
@@ -83,7 +85,7 @@ export class PlaceFile implements PlaceKeeper {
   load(): Place | null {
     try {
       const place = JSON.parse(readFileSync(this.#file, "utf8")) as Place;
-      return place.version === 1 ? place : null;
+      return place.version === 1 ? { ...newPlace(place.target), ...place } : null;
     } catch (error) {
       if (error instanceof SyntaxError || errorCode(error) === "ENOENT") return null;
       throw error;

@@ -15,6 +15,7 @@ export const MEASUREMENT = {
   gaps: "beamsitter_gaps",
   notes: "beamsitter_notes",
   epochs: "beamsitter_epochs",
+  readings: "beamsitter_readings",
   texts: "beamsitter_texts",
 } as const;
 

@@ -74,7 +74,7 @@ export const PASSWORD = "its own, with a comma";
 /** InfluxDB 1.x with TLS, authentication and one user; the credentials lie in a file of mode 0600. */
 export async function influxServer(
   folder: string,
-  lines: readonly string[] = [],
+  dataLines: readonly string[] = [],
 ): Promise<RealServer> {
   mkdirSync(folder, { recursive: true });
   const port = await freePort();
@@ -92,10 +92,10 @@ export async function influxServer(
     `bind-address = "127.0.0.1:${await freePort()}"`,
     `[meta]\ndir = "${folder}/meta"`,
     `[data]\ndir = "${folder}/data"\nwal-dir = "${folder}/wal"\nquery-log-enabled = false`,
+    ...dataLines,
     "[monitor]\nstore-enabled = false",
     `[http]\nbind-address = "127.0.0.1:${port}"\nauth-enabled = true\nlog-enabled = false`,
     `https-enabled = true\nhttps-certificate = "${ca}"\nhttps-private-key = "${key}"`,
-    ...lines,
   ];
   writeFileSync(file, `${config.join("\n")}\n`);
   const credentials = join(folder, "credentials");
