@@ -22,6 +22,7 @@ const asItIs: Tamper = (counts) => counts;
 
 /** How long a fault lasts and how long all is well between two, ms: light needs about 7 s to come. */
 const FAULT_ms = { min: 20, max: 1800 };
+const STALL_ms = { min: 5, max: 2500 };
 const CALM_ms = { min: 200, max: 14_000 };
 
 /**
@@ -81,6 +82,8 @@ export class Chaos {
   run(ms: number): void {
     for (let i = 0; i < ms; i++) {
       if (this.now_ms >= this.#fault_ms) this.#turn();
+      // Misfortunes do not wait for each other.
+      if (this.#heal !== NOTHING && this.#chance.uniform() < 0.0004) this.#blow();
       this.#people();
       this.#step();
     }
@@ -255,15 +258,20 @@ export class Chaos {
     }
     const kind = this.#chance.uniform();
     if (kind < 0.45) this.#wireFault();
-    else if (kind < 0.57)
-      this.#stalledUntil_ms = this.now_ms + this.#between({ min: 5, max: 2500 });
-    else if (kind < 0.69) this.#resetBoard();
-    else if (kind < 0.76) this.#pull();
-    else if (kind < 0.86) this.#sensor();
-    else if (kind < 0.94) this.#hands();
-    else if (kind < 0.97) this.#clockOff_ms += this.#between({ min: 1, max: 4000 });
-    else this.#restartHost();
+    else if (kind < 0.52) this.#pull();
+    else if (kind < 0.62) this.#sensor();
+    else if (kind < 0.7) this.#hands();
+    else this.#blow();
     this.#fault_ms = this.now_ms + this.#between(this.#heal === NOTHING ? CALM_ms : FAULT_ms);
+  }
+
+  /** Something that happens in one moment. */
+  #blow(): void {
+    const kind = this.#chance.uniform();
+    if (kind < 0.4) this.#stalledUntil_ms = this.now_ms + this.#between(STALL_ms);
+    else if (kind < 0.8) this.#resetBoard();
+    else if (kind < 0.9) this.#clockOff_ms += this.#between({ min: 1, max: 4000 });
+    else this.#restartHost();
   }
 
   #mend(): void {
@@ -301,14 +309,14 @@ export class Chaos {
     this.#heal = () => this.plug();
   }
 
+  /** The host is killed and started again; what stands in the adapter's buffers arrives all the same. */
   #restartHost(): void {
-    this.#plugged = false;
-    this.down.cut();
+    const plugged = this.#plugged;
     this.#arrived = "";
     this.#pending = [];
     this.#stalledUntil_ms = 0;
     [this.loop, this.#asking] = this.#host();
-    this.plug();
+    if (plugged) this.plug();
   }
 
   #sensor(): void {
