@@ -55,7 +55,7 @@ async function demo(options: Options): Promise<void> {
 function sentences(s: NightSummary): string[] {
   const lines = [
     `${(s.simulatedSeconds / 3600).toFixed(2)} h simulated in ${s.wallSeconds.toFixed(1)} s: ${s.samples} samples in ${s.sessions} sessions.`,
-    `The case reached ${s.highestCaseC.toFixed(1)} °C; the current was held down for ${(s.cappedSeconds / 60).toFixed(0)} min; ${s.warnings} warnings.`,
+    `The case reached ${s.highestCaseC.toFixed(1)} °C; the current was held down for ${(s.cappedSeconds / 60).toFixed(0)} min; ${s.warnings === 1 ? "1 warning" : `${s.warnings} warnings`}.`,
   ];
   if (s.trips.length === 0) lines.push("Nothing tripped.");
   for (const t of s.trips)
