@@ -301,24 +301,15 @@ export class Store {
       case "event":
         this.#event(op.run, op.event);
         break;
-      case "journal": {
-        const e = op.entry;
-        const asked = [e.request, e.asker, e.requestId, e.value, e.fact, e.factValue];
-        run("journal", op.run, e.input, e.kind, e.now_ms, ...asked, op.benchFile, op.manifest);
+      case "journal":
+        this.#journal(op);
         break;
-      }
       case "tail":
         run("tail", ...rowValues(op.rows));
         run("seen", op.rows.n, op.rows.t1, op.rows.session);
         break;
       case "block":
-        run("block", ...rowValues(op.rows));
-        for (const m of op.minutes) {
-          run("minute", ...statsValues(m, "minute"));
-          run("hour", ...statsValues(m, "hour"));
-        }
-        run("tailDone", op.rows.block);
-        run("seen", op.unseen, op.rows.t1, op.rows.session);
+        this.#block(op);
         break;
       case "rollup":
         run("rollup", ...rollupValues(op.row));
@@ -338,6 +329,25 @@ export class Store {
       default:
         op satisfies never;
     }
+  }
+
+  #journal(op: WriteOp & { op: "journal" }): void {
+    const e = op.entry;
+    const asked = [e.request, e.asker, e.requestId, e.value, e.fact, e.factValue];
+    const { run, benchFile, manifest } = op;
+    this.#statements.journal.run(run, e.input, e.kind, e.now_ms, ...asked, benchFile, manifest);
+  }
+
+  /** A packed block, its minutes and hours, and the end of its tail, in the same transaction. */
+  #block(op: WriteOp & { op: "block" }): void {
+    const { block, minute, hour, tailDone, seen } = this.#statements;
+    block.run(...rowValues(op.rows));
+    for (const m of op.minutes) {
+      minute.run(...statsValues(m, "minute"));
+      hour.run(...statsValues(m, "hour"));
+    }
+    tailDone.run(op.rows.block);
+    seen.run(op.unseen, op.rows.t1, op.rows.session);
   }
 
   /** An event is never dropped for its number: where that is taken, it gets the next free one. */
