@@ -1,6 +1,7 @@
 import { join } from "node:path";
 import { epochWords } from "../model/epoch.ts";
 import { writeEpoch, writeReading } from "./by-hand.ts";
+import { noteSent, SECOND_HOME } from "./influx-exported.ts";
 import type { KeeperDone, KeeperRequest } from "./keeper-api.ts";
 import { writeNote, writeTag } from "./notes.ts";
 import { retire, ruleOf } from "./retention.ts";
@@ -37,6 +38,7 @@ export class Keeper {
       case "reading":
         return this.#reading(request);
       case "retire": {
+        if (request.exportedTo === SECOND_HOME) noteSent(this.#store, this.#wall_ms());
         const rule = ruleOf(request.days, request.gigabytes, request.exportedTo);
         const retired = yield* retire(this.#store, this.#bench, rule, this.#wall_ms());
         return done(0, retired.words);
