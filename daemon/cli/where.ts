@@ -1,6 +1,7 @@
 import {
   chmodSync,
   existsSync,
+  lstatSync,
   mkdirSync,
   readdirSync,
   readFileSync,
@@ -38,6 +39,15 @@ export function runtimeFolder(): string {
       ? join(given, "beamsitter")
       : join(tmpdir(), `beamsitter-${userInfo().uid}`);
   mkdirSync(folder, { recursive: true, mode: 0o700 });
+  // In a place that all may write to, somebody else may have put it there, or a link in its stead:
+  // they could then hang up a switch of their own, and a dark would go to it.
+  const found = lstatSync(folder);
+  if (!found.isDirectory() || found.uid !== userInfo().uid) {
+    throw new Trouble(
+      `${folder}, where the switch belongs, is ${found.isDirectory() ? `a folder of user ${found.uid}` : "no folder but a link or a file"}.`,
+      "Have it removed, or set XDG_RUNTIME_DIR to a folder of your own.",
+    );
+  }
   // The folder's mode is the switch's authentication, so it is set even where the folder was there.
   chmodSync(folder, 0o700);
   return folder;
