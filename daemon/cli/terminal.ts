@@ -1,4 +1,4 @@
-import { closeSync, constants, openSync, write } from "node:fs";
+import { closeSync, constants, fstatSync, openSync, write } from "node:fs";
 import type { EventLine } from "../control/api.ts";
 import { codeOf, terminalColumns, wrapped } from "./say.ts";
 
@@ -76,6 +76,9 @@ export class Terminal {
 /** A description of standard output that does not wait, where the system gives one. */
 function ownHandle(): number {
   try {
+    // A file never makes a writer wait for a reader, and only the shared description keeps the place
+    // where the next program of a script goes on: appended lines would be written over.
+    if (fstatSync(1).isFile()) return 1;
     const flags = constants.O_WRONLY | constants.O_APPEND | constants.O_NONBLOCK;
     return openSync("/proc/self/fd/1", flags);
   } catch {
