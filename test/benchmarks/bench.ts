@@ -5,18 +5,20 @@ import { judgeCost } from "./judge-cost.ts";
 import { nightSpeed } from "./night-speed.ts";
 import { pageSize } from "./page-size.ts";
 import { reaction } from "./reaction.ts";
+import { store } from "./store.ts";
 
 /**
  * `npm run bench`: the figures, measured on this machine, reported and never asserted.
  *
  *   --json FILE      writes them as an array of {name, value, unit, peer?, ratio?}
- *   --only PREFIX    only the part whose names begin so: judge, demo, page, reaction, daemon
+ *   --only PREFIX    only the part whose names begin so: judge, demo, page, store, reaction, daemon
  */
 const PARTS: readonly { readonly names: readonly string[]; run(): Figure[] | Promise<Figure[]> }[] =
   [
     { names: ["judge"], run: judgeCost },
     { names: ["demo"], run: nightSpeed },
     { names: ["page"], run: pageSize },
+    { names: ["store"], run: store },
     { names: ["reaction", "daemon"], run: reaction },
   ];
 

@@ -45,6 +45,21 @@ export async function reaction(): Promise<Figure[]> {
   }
 }
 
+/** p99.9 at 1000 samples a second while `beside` works on the daemon's own record, and the echo's. */
+export async function reactionBeside(
+  beside: (record: string) => () => void,
+): Promise<{ ours_ms: number; echo_ms: number }> {
+  const folder = mkdtempSync(join(tmpdir(), "bs-reaction-"));
+  try {
+    compile(folder);
+    const { ours } = await measureDaemon(folder, 1000, beside);
+    const echo = await measureEcho(folder, 1000);
+    return { ours_ms: ours.p999, echo_ms: echo.p999 };
+  } finally {
+    rmSync(folder, { recursive: true, force: true });
+  }
+}
+
 function figuresOf(rate_perS: number, ours: Timed, echo: Timed): Figure[] {
   const name = `reaction.${rate_perS}`;
   const against = (value: number, peer: number) => ({
@@ -84,6 +99,7 @@ function cc(sources: string[], out: string, include: string): void {
 async function measureDaemon(
   folder: string,
   rate_perS: number,
+  beside?: (record: string) => () => void,
 ): Promise<{ ours: Timed; rss_MB: number }> {
   const board = spawn(join(folder, "board"), [`${rate_perS}`, `${SECONDS}`, "permits"]);
   const lines = linesOf(board);
@@ -92,6 +108,7 @@ async function measureDaemon(
   mkdirSync(run, { mode: 0o700 });
   const file = join(run, "bench.yaml");
   writeFileSync(file, benchText(path, rate_perS));
+  const stop = beside?.(join(run, "data", "beamsitter", "bare-diode"));
   const env = { ...process.env, XDG_RUNTIME_DIR: run, XDG_DATA_HOME: join(run, "data") };
   const cli = fileURLToPath(builtFile("daemon/cli/main.js"));
   const daemon = spawn(process.execPath, [cli, "run", "--bench", file, "--port", "0"], {
@@ -112,6 +129,7 @@ async function measureDaemon(
     watchers.kill("SIGKILL");
     return { ours, rss_MB };
   } finally {
+    stop?.();
     daemon.kill("SIGKILL");
     board.kill("SIGKILL");
   }
