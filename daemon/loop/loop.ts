@@ -71,6 +71,9 @@ export class Loop {
     this.out = newOut();
     this.state = newState();
     if (latch !== null) restoreLatch(this.state, latch.cause, latch.lit);
+    // Shown from the start: without a port it may be long until the first step.
+    this.out.view.state = this.state.state;
+    this.out.view.cause = this.state.cause;
     const serial = latch !== null && latch.serial !== "" ? latch.serial : bench.controller.serial;
     this.session = sessionFor(bench, serial, (manifest) => this.#curveFor(manifest));
     this.telling = new Telling(bench.name, ports);

@@ -1,5 +1,6 @@
 import { describe, expect, test } from "vitest";
 import { STATE } from "../../../daemon/judge/records.ts";
+import { wall } from "../../../daemon/model/times.ts";
 import { Chaos } from "./chaos.ts";
 
 /** More seeds than the suite has time for: CHAOS_FROM=1000 CHAOS_SEEDS=200 runs that many. */
@@ -132,4 +133,10 @@ describe("a canary is caught", () => {
     },
     LIMIT_ms,
   );
+});
+
+test("a host started anew without its cable shows at once what was latched", () => {
+  const c = new Chaos(1);
+  c.restoreFrom({ cause: 83, wall: wall(0), serial: "NORTH-1", lit: false });
+  expect([c.state, c.cause]).toEqual(["tripped", "link-lost"]);
 });

@@ -309,6 +309,13 @@ export class Chaos {
     this.#heal = () => this.plug();
   }
 
+  /** A host that begins with this latch, and without a cable. */
+  restoreFrom(latch: StoredLatch): void {
+    this.#latch = latch;
+    this.#plugged = false;
+    [this.loop, this.#asking] = this.#host();
+  }
+
   /** The host is killed and started again; what stands in the adapter's buffers arrives all the same. */
   #restartHost(): void {
     const plugged = this.#plugged;
