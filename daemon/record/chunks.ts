@@ -93,6 +93,7 @@ export function openStored(
   return "fault" in block ? { fault: `${name} cannot be read: ${block.fault}` } : block;
 }
 
+/** The plus keeps SQLite from looking up all blocks of a run where a window names a few. */
 function conditions(filter: Omit<ChunkFilter, "unrolled">): {
   where: string;
   values: Record<string, unknown>;
@@ -100,7 +101,7 @@ function conditions(filter: Omit<ChunkFilter, "unrolled">): {
   const parts: string[] = [];
   if (filter.session !== undefined) parts.push("session = @session");
   if (filter.run !== undefined) parts.push("run = @run");
-  if (filter.bench !== undefined) parts.push("run IN (SELECT id FROM runs WHERE bench = @bench)");
+  if (filter.bench !== undefined) parts.push("+run IN (SELECT id FROM runs WHERE bench = @bench)");
   if (filter.from !== undefined) parts.push("t0 >= @from - @span AND t1 >= @from");
   if (filter.to !== undefined) parts.push("t0 < @to");
   const where = parts.length === 0 ? "" : `WHERE ${parts.join(" AND ")}`;

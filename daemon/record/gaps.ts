@@ -8,7 +8,8 @@ import { wall } from "../model/times.ts";
  */
 export const LIVE_EDGE_ms = 2500;
 
-const OF_BENCH = "run IN (SELECT id FROM runs WHERE bench = @bench)";
+/** The plus keeps SQLite from sorting all blocks of a run to find its first. */
+const OF_BENCH = "+run IN (SELECT id FROM runs WHERE bench = @bench)";
 
 /** Stretches of a window without any sample of a bench: those stored, and those at its edges. */
 export function gapsOf(

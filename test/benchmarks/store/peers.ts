@@ -118,7 +118,7 @@ async function second(ask: () => Promise<void>): Promise<number> {
   return performance.now() - began;
 }
 
-/** Size of a folder once it has been the same for some looks. */
+/** Bytes that a folder takes on the disk, once they have been the same for some looks. */
 async function settled(folder: string): Promise<number> {
   const end = performance.now() + SETTLE_ms_MAX;
   let before = -1;
@@ -136,7 +136,7 @@ function sizeOf(folder: string): number {
   for (const entry of readdirSync(folder, { withFileTypes: true })) {
     const path = join(folder, entry.name);
     if (entry.isDirectory()) bytes += sizeOf(path);
-    else bytes += statSync(path, { throwIfNoEntry: false })?.size ?? 0;
+    else bytes += 512 * (statSync(path, { throwIfNoEntry: false })?.blocks ?? 0);
   }
   return bytes;
 }

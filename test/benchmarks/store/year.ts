@@ -30,6 +30,9 @@ export async function year(): Promise<Year> {
     write(folder, SHAPE, 86_400 * SHAPE.rate_perS, 60_000);
     const db = new Database(recordFile(folder));
     db.pragma("synchronous = OFF");
+    for (const table of Object.keys(MOVED)) {
+      db.exec(`CREATE TEMP TABLE day_${table} AS SELECT * FROM ${table}`);
+    }
     for (let day = 1; day < DAYS; day++) copyDay(db, day);
     const bytes =
       Number(db.pragma("page_count", { simple: true })) *
@@ -51,13 +54,10 @@ function copyDay(db: Database.Database, day: number): void {
       const values = names.map((name) =>
         moved[name] === undefined ? name : `${name} + ${moved[name]}`,
       );
-      const first =
-        table === "blocks" || table === "rollups"
-          ? `t0 >= ${BEGIN_ms}`
-          : `${table === "rollup_1min" ? "minute * 60000" : "hour * 3600000"} >= ${BEGIN_ms}`;
-      db.prepare(
-        `INSERT INTO ${table} (${names}) SELECT ${values} FROM ${table} WHERE ${first}`,
-      ).run({ id: day * 1_000_000, ms: -day * DAY_ms });
+      db.prepare(`INSERT INTO ${table} (${names}) SELECT ${values} FROM day_${table}`).run({
+        id: day * 1_000_000,
+        ms: -day * DAY_ms,
+      });
     }
   })();
 }
